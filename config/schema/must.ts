@@ -11,7 +11,11 @@ export const finite = z.number()
 export const fraction_kg_kg = z
   .number()
   .check(
-    must((v) => v >= 0 && v <= 1, 'a mass fraction lies between 0 and 1', 'give kg per kg of product'),
+    must(
+      (v) => v >= 0 && v <= 1,
+      'a mass fraction lies between 0 and 1',
+      'give kg per kg of product',
+    ),
   )
 
 export const positive = (what: string, unit: string) =>
@@ -43,4 +47,10 @@ export const instant = z.iso.datetime({
 /** Two temperatures, low first. */
 export const range_C = z
   .tuple([celsius, celsius])
-  .check(must(([low, high]) => low < high, 'the low end is not below the high end', 'give [low, high] in °C'))
+  .check(
+    must(
+      ([low, high]) => low < high,
+      'the low end is not below the high end',
+      'give [low, high] in °C',
+    ),
+  )

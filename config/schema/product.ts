@@ -1,5 +1,14 @@
 import { z } from 'zod'
-import { celsius, finite, fraction_kg_kg, must, notNegative, positive, range_C, u_K } from './must.js'
+import {
+  celsius,
+  finite,
+  fraction_kg_kg,
+  must,
+  notNegative,
+  positive,
+  range_C,
+  u_K,
+} from './must.js'
 
 export const ProductId = z.string().min(1).brand<'ProductId'>()
 export type ProductId = z.infer<typeof ProductId>
@@ -197,5 +206,8 @@ export type ContainerPhysics = z.infer<typeof ContainerPhysics>
 
 export const Container = z
   .strictObject({ id: ContainerId, name: z.string().optional(), ...ContainerPhysics.shape })
-  .meta({ title: 'Container', description: 'Fill, shape, wall and heat transfer of one container.' })
+  .meta({
+    title: 'Container',
+    description: 'Fill, shape, wall and heat transfer of one container.',
+  })
 export type Container = z.infer<typeof Container>

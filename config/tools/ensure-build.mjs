@@ -2,7 +2,18 @@
 // Chatter goes to stderr, so that a command's answers on stdout stay clean. Two that start at
 // once do not build into each other: the second waits for the first one's lock.
 import { execFileSync } from 'node:child_process'
-import { closeSync, existsSync, mkdirSync, openSync, readdirSync, readFileSync, rmSync, statSync, writeFileSync, writeSync } from 'node:fs'
+import {
+  closeSync,
+  existsSync,
+  mkdirSync,
+  openSync,
+  readdirSync,
+  readFileSync,
+  rmSync,
+  statSync,
+  writeFileSync,
+  writeSync,
+} from 'node:fs'
 import { dirname, join } from 'node:path'
 import { fileURLToPath } from 'node:url'
 
@@ -18,14 +29,37 @@ const newest = (path) => {
 
 const parts = {
   server: {
-    sources: ['server', 'sim', 'config/schema', 'config/library', 'config/words', 'test/bench', 'config/tools/server.tsconfig.json', 'tsconfig.json', 'package-lock.json'],
+    sources: [
+      'server',
+      'sim',
+      'config/schema',
+      'config/library',
+      'config/words',
+      'test/bench',
+      'config/tools/server.tsconfig.json',
+      'tsconfig.json',
+      'package-lock.json',
+    ],
     stamp: 'dist/server.built',
     build: () => ['node_modules/typescript/bin/tsc', '-p', 'config/tools/server.tsconfig.json'],
   },
   client: {
-    sources: ['client', 'config/words', 'config/schema', 'config/tools/vite.config.ts', 'package-lock.json'],
+    sources: [
+      'client',
+      'config/words',
+      'config/schema',
+      'config/tools/vite.config.ts',
+      'package-lock.json',
+    ],
     stamp: 'dist/client.built',
-    build: () => ['node_modules/vite/bin/vite.js', 'build', '--config', 'config/tools/vite.config.ts', '--logLevel', 'warn'],
+    build: () => [
+      'node_modules/vite/bin/vite.js',
+      'build',
+      '--config',
+      'config/tools/vite.config.ts',
+      '--logLevel',
+      'warn',
+    ],
   },
 }
 
@@ -34,7 +68,10 @@ const stale = ([, { sources, stamp }]) => {
   return sources.some((source) => newest(join(root, source)) > built)
 }
 
-const wanted = () => Object.entries(parts).filter(([name]) => !only || name === only).filter(stale)
+const wanted = () =>
+  Object.entries(parts)
+    .filter(([name]) => !only || name === only)
+    .filter(stale)
 
 /** Runs `work` while holding the build lock; a lock whose holder has died is taken over. */
 const locked = (work) => {

@@ -1,6 +1,6 @@
 import { defineConfig } from 'vitest/config'
 
-const nightly = process.env['HOARLINE_NIGHTLY'] === '1'
+const nightly = process.env.HOARLINE_NIGHTLY === '1'
 
 export default defineConfig({
   root: new URL('../..', import.meta.url).pathname,
