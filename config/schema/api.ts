@@ -22,6 +22,11 @@ export type ItemView = {
   readonly verdict: Verdict
   /** Data time since which the standing has been this. */
   readonly since_ms: number
+  /**
+   * When a turn was announced that no person has withdrawn; null when there was none. While it
+   * stands, a screen shows Turned even where later readings took it back (rulings.md 1).
+   */
+  readonly announcedTurned_ms: number | null
   /** The last hour of data time, thinned: [t_ms, margin_K]. */
   readonly track: readonly (readonly [number, number])[]
   /** The next half hour, margin. */
@@ -70,6 +75,8 @@ export type Intake = {
   readonly outage: string | null
   /** How far the watch is behind the log, s. */
   readonly behind_s: number
+  /** Stored items that the watch could not evaluate, by a fault of ours; normally empty. */
+  readonly notEvaluated: readonly string[]
 }
 
 export type RefusedView = {
