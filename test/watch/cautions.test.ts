@@ -122,7 +122,7 @@ test.each<{ situation: string; key: string; given: Partial<Situation> }>([
     key: 'state-unknown',
     given: { standing: 'Silent', phase: 'unknown' },
   },
-])('$situation is answered by the row "$key"', ({ key, given }) => {
+])('$situation is answered by the row $key', ({ key, given }) => {
   expect(cautionsFor({ ...calm, ...given }, table)).toContain(key)
 })
 
