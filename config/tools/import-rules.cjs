@@ -99,7 +99,7 @@ module.exports = {
     ...only(
       'store is SQL and nothing else',
       store,
-      [schema, seam, pack('better-sqlite3'), node('fs', 'path', 'url')],
+      [schema, seam, pack('better-sqlite3'), node('fs', 'path', 'url', 'crypto')],
       [...judged, watching],
     ),
     ...only('mqtt carries bytes', '^server/mqtt/', [
@@ -143,7 +143,7 @@ module.exports = {
     ]),
     ...only('settings stand alone', '^server/settings\\.ts$', [schema, node('fs', 'path', 'util')]),
     ...only('a clock is a seam', siteClock, [seam]),
-    ...only('threads share shapes', watching, [], [schema, seam, '^server/board\\.ts$']),
+    ...only('threads share shapes', watching, [], [schema, seam, store, '^server/board\\.ts$']),
     ...only('worker joins the watch to the log', '^server/worker\\.ts$', [
       '^server/(alarms|record)/',
       physics, // the two curves of one item, asked for by a screen
