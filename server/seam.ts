@@ -39,6 +39,8 @@ export type Refused = {
   readonly value: string
   readonly problem: string
   readonly remedy: string
+  /** Set when the reading itself was kept and this only says what is amiss with it. */
+  readonly notice?: true
 }
 
 export type LoggedReading = Reading & {
