@@ -5,6 +5,7 @@ import {
   type IngestLog,
   type LoggedReading,
   Outage,
+  type Refused,
   type StateStore,
 } from '../seam.js'
 import type { Counts } from '../store/counters.js'
@@ -241,7 +242,7 @@ export const openLog = async (options: {
     void (await call([], { refused: [], change }))
 
   return {
-    append: (arrivals, refused) => call(arrivals, { refused, change: null }),
+    append: (arrivals, refused) => call(arrivals, { refused: refused.map(alone), change: null }),
     apply,
     save: (part, offset, model, configRevision, state) =>
       apply({ snapshots: [{ part, offset, model, configRevision, state }] }),
@@ -267,6 +268,12 @@ export const openLog = async (options: {
     },
   }
 }
+
+/** A payload is often a slice of a socket's buffer, all of which would cross to the writer. */
+const alone = (refused: Refused): Refused => ({
+  ...refused,
+  payload: Uint8Array.from(refused.payload),
+})
 
 /** A write that nobody waits for, to learn whether the disk is back. */
 const question = (): Job => ({
