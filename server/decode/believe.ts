@@ -41,7 +41,9 @@ const fahrenheit = (known: Known, found: Found): Complaint => ({
   value: found.written,
   problem: `probe "${known.probe.id}" sends this as °C; read as °F it is ${asFahrenheit_C(
     found.celsius ?? 0,
-  ).toFixed(1)} °C, which is what is expected there`,
+  ).toFixed(
+    1,
+  )} °C, which ${known.expected_C === null ? 'lies in its range' : 'is what is expected there'}`,
   remedy: 'set the device to °C, or declare "unit": "degF" in the probe\'s source',
   notice: true,
 })
