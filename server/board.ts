@@ -8,10 +8,11 @@ import type {
   Snapshot,
   StorageUnitView,
 } from '../config/schema/api.js'
-import { inForce } from '../config/schema/inForce.js'
+import { everyValue, inForce } from '../config/schema/inForce.js'
 import type { Item, Probe, SiteFile } from '../config/schema/site.js'
 import type { Judgement, Verdict } from '../config/schema/verdict.js'
 import type { LoggedReading } from './seam.js'
+import type { Reader } from './store/reader.js'
 
 /** What the watch says of one item, ready to be shown. */
 export type Judged = {
@@ -24,6 +25,10 @@ export type Judged = {
   readonly forecast: readonly Fan[]
   readonly tints_K: ItemView['tints_K']
 }
+
+/** A probe not heard for longer than this counts as never heard, on the Probes page. */
+const recalled_ms = 7 * 86_400_000
+const recalledPoints = 40
 
 type Heard = { reading: LoggedReading; trusted: LoggedReading | null }
 
@@ -54,13 +59,21 @@ export const boardOf = (
   let asOf_ms = 0
   let last = ''
 
+  const assignments = Map.groupBy(
+    site.assignments.map((a) => ({
+      ...a,
+      from_ms: Date.parse(a.from),
+      until_ms: a.until === null ? Number.POSITIVE_INFINITY : Date.parse(a.until),
+    })),
+    (a) => a.probe,
+  )
   const assignmentOf = (probe: Probe, t_ms: number) =>
-    site.assignments.findLast(
-      (a) =>
-        a.probe === probe.id &&
-        Date.parse(a.from) <= t_ms &&
-        (a.until === null || Date.parse(a.until) > t_ms),
-    )?.to ?? null
+    (assignments.get(probe.id) ?? []).findLast((a) => a.from_ms <= t_ms && a.until_ms > t_ms)?.to ??
+    null
+  const airProbes = site.probes.filter((p) => p.placement === 'in-air')
+  const productsOf = new Map(site.products.map((p) => [everyValue(p)[0]?.id, p]))
+  const containersOf = new Map(site.containers.map((c) => [everyValue(c)[0]?.id, c]))
+  const itemsById = new Map(site.items.map((i) => [i.id as string, i]))
 
   const probeView = (probe: Probe, now_ms: number): ProbeView => {
     const last = heard.get(probe.id)
@@ -89,8 +102,7 @@ export const boardOf = (
   const unitViews = (now_ms: number): StorageUnitView[] =>
     site.storageUnits.map((given) => {
       const unit = inForce(given, now_ms)
-      const air = site.probes
-        .filter((p) => p.placement === 'in-air')
+      const air = airProbes
         .filter((p) => {
           const to = assignmentOf(p, now_ms)
           return to !== null && 'storageUnit' in to && to.storageUnit === unit.id
@@ -121,11 +133,11 @@ export const boardOf = (
   const itemView = (item: Item, now_ms: number): ItemView | null => {
     const known = judged.get(item.id)
     if (known === undefined || !isStored(item, now_ms)) return null
-    const product = site.products.map((p) => inForce(p, now_ms)).find((p) => p.id === item.product)
-    const container = site.containers
-      .map((c) => inForce(c, now_ms))
-      .find((c) => c.id === item.container)
-    if (product === undefined || container === undefined) return null
+    const givenProduct = productsOf.get(item.product)
+    const givenContainer = containersOf.get(item.container)
+    if (givenProduct === undefined || givenContainer === undefined) return null
+    const product = inForce(givenProduct, now_ms)
+    const container = inForce(givenContainer, now_ms)
     const place = placeOf(item, now_ms)
     return {
       id: item.id,
@@ -148,27 +160,47 @@ export const boardOf = (
     }
   }
 
-  const views = (now_ms: number, only: ReadonlySet<string> | null): ItemView[] =>
-    site.items
-      .filter((i) => only === null || only.has(i.id))
-      .map((i) => itemView(i, now_ms))
-      .filter((v) => v !== null)
+  const views = (now_ms: number, items: Iterable<Item | undefined>): ItemView[] =>
+    [...items].map((i) => (i === undefined ? null : itemView(i, now_ms))).filter((v) => v !== null)
+
+  const hear = (readings: readonly LoggedReading[]): void => {
+    for (const reading of readings) {
+      if (reading.kept === 'duplicate') continue
+      const last = heard.get(reading.probe)
+      const good = reading.quality === 'good' || reading.quality === 'late entry'
+      const trusted = good ? reading : null
+      const newest = <T extends LoggedReading | null>(a: T, b: T): T =>
+        a === null ? b : b === null || a.t_ms >= b.t_ms ? a : b
+      heard.set(reading.probe, {
+        reading: last === undefined ? reading : newest(reading, last.reading),
+        trusted: newest(trusted, last?.trusted ?? null),
+      })
+      asOf_ms = Math.max(asOf_ms, reading.t_ms)
+    }
+  }
 
   return {
     /** Readings that are on disk now. */
-    hear(readings: readonly LoggedReading[]): void {
-      for (const reading of readings) {
-        if (reading.kept === 'duplicate') continue
-        const last = heard.get(reading.probe)
-        const good = reading.quality === 'good' || reading.quality === 'late entry'
-        const trusted = good ? reading : null
-        const newest = <T extends LoggedReading | null>(a: T, b: T): T =>
-          a === null ? b : b === null || a.t_ms >= b.t_ms ? a : b
-        heard.set(reading.probe, {
-          reading: last === undefined ? reading : newest(reading, last.reading),
-          trusted: newest(trusted, last?.trusted ?? null),
-        })
-        asOf_ms = Math.max(asOf_ms, reading.t_ms)
+    hear,
+
+    /** What was last heard of each probe before this start. */
+    recall(reader: Reader, now_ms: number): void {
+      for (const probe of site.probes) {
+        const points = reader.points(probe.id, now_ms - recalled_ms, null, recalledPoints)
+        hear(
+          points.map(([t_ms, celsius, quality]) => ({
+            probe: probe.id,
+            t_ms,
+            receivedAt_ms: t_ms,
+            celsius,
+            seq: -1,
+            quality,
+            timeSource: 'device',
+            offset: 0,
+            part: 0,
+            kept: 'new',
+          })),
+        )
       }
     },
 
@@ -188,7 +220,7 @@ export const boardOf = (
         asOf_ms,
         site: view,
         storageUnits: unitViews(view.now_ms),
-        items: views(view.now_ms, null),
+        items: views(view.now_ms, site.items),
         probes: site.probes.map((p) => probeView(p, view.now_ms)),
         intake: give.intake(),
       }
@@ -204,7 +236,10 @@ export const boardOf = (
       if (dirty.size === 0 && rest === last) return null
       last = rest
       seq += 1
-      const items = views(view.now_ms, dirty)
+      const items = views(
+        view.now_ms,
+        [...dirty].map((id) => itemsById.get(id)),
+      )
       dirty.clear()
       return {
         seq,

@@ -28,6 +28,8 @@ export type ToWatch =
     }
   /** The site's clock has moved: timers due by now fire, and verdicts are made anew. */
   | { readonly kind: 'tick'; readonly now_ms: number; readonly upTo: Offset }
+  /** Save what there is and end. */
+  | { readonly kind: 'stop' }
   | {
       readonly kind: 'ask'
       readonly id: number
@@ -39,7 +41,8 @@ export type ToWatch =
 export type Outlook = { readonly forecast: readonly Fan[]; readonly chance: readonly Fan[] }
 
 export type FromWatch =
-  | { readonly kind: 'ready' }
+  /** Everything on disk is judged, up to here. */
+  | { readonly kind: 'ready'; readonly offset: Offset }
   /** All readings up to here are judged. */
   | { readonly kind: 'done'; readonly offset: Offset }
   | { readonly kind: 'judged'; readonly items: readonly Judged[] }

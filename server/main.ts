@@ -1,0 +1,42 @@
+import { Refusal } from '../config/schema/refusal.js'
+import { startProgram } from './program.js'
+import { help, settingsOf } from './settings.js'
+
+/** A second signal, or a stop that takes longer than this, ends the program at once. */
+const patience_ms = 15_000
+
+const refuse = (error: unknown): never => {
+  if (!(error instanceof Refusal)) throw error
+  console.error(`Hoarline cannot start: ${error.message}`)
+  process.exit(2)
+}
+
+try {
+  const settings = settingsOf(process.argv.slice(2), process.env)
+  if (settings === 'help') {
+    console.log(help())
+  } else {
+    const program = await startProgram(settings)
+    console.log(
+      `Hoarline is ready: ${[program.http, program.mqtt].filter((a) => a !== null).join('  ')}`,
+    )
+    console.log(`Open: ${program.http}/`)
+    let stopping = false
+    const stop = () => {
+      if (stopping) process.exit(1)
+      stopping = true
+      setTimeout(() => process.exit(1), patience_ms).unref()
+      program.stop().then(
+        () => process.exit(0),
+        (error) => {
+          console.error(error)
+          process.exit(1)
+        },
+      )
+    }
+    process.on('SIGTERM', stop)
+    process.on('SIGINT', stop)
+  }
+} catch (error) {
+  refuse(error)
+}
