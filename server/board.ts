@@ -59,13 +59,17 @@ export const boardOf = (
   let asOf_ms = 0
   let last = ''
 
-  const assignments = Map.groupBy(
-    site.assignments.map((a) => ({
-      ...a,
-      from_ms: Date.parse(a.from),
-      until_ms: a.until === null ? Number.POSITIVE_INFINITY : Date.parse(a.until),
-    })),
-    (a) => a.probe,
+  const assignments = new Map(
+    site.probes.map((p) => [
+      p.id,
+      site.assignments
+        .filter((a) => a.probe === p.id)
+        .map((a) => ({
+          to: a.to,
+          from_ms: Date.parse(a.from),
+          until_ms: a.until === null ? Number.POSITIVE_INFINITY : Date.parse(a.until),
+        })),
+    ]),
   )
   const assignmentOf = (probe: Probe, t_ms: number) =>
     (assignments.get(probe.id) ?? []).findLast((a) => a.from_ms <= t_ms && a.until_ms > t_ms)?.to ??
