@@ -65,8 +65,8 @@ test('every JSON of the house can be read', () => {
 })
 
 test('no source outgrows what a person reads in one go', () => {
-  // The house wants 80 to 200 lines; past 300 a second idea has moved in. Here is the wall.
-  const wall = 400
+  // The house wants 80 to 200 lines; past 300 a second idea has often moved in. Here is the wall.
+  const wall = 500
   const long = code()
     .map((path) => ({ path, lines: read(path).split('\n').length }))
     .filter(({ lines }) => lines > wall)
