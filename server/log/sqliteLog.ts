@@ -46,6 +46,8 @@ const retry_ms = 500
 const patience_ms = 10_000
 
 type Job = {
+  /** Rising: the order of the calls. */
+  readonly n: number
   readonly arrivals: readonly Arrival[]
   readonly extra: Extra
   readonly size: number
@@ -75,13 +77,14 @@ export type SqliteLog = IngestLog &
  * @param options.data      folder of the store
  * @param options.onOutage  called when the disk goes away, and with null when it is back
  * @param options.fault     tests only: lets writes fail
+ * @param options.waits     tests only: shorter waits for an absent disk
  * @throws Refusal when the folder cannot be used or another server holds it
  */
 export const openLog = async (options: {
   readonly data: string
   readonly onOutage: (outage: Outage | null) => void
   readonly fault?: Fault
-  readonly patience_ms?: number
+  readonly waits?: { readonly retry_ms?: number; readonly patience_ms?: number }
 }): Promise<SqliteLog> => {
   const letGo = holdFolder(options.data)
   const worker = new Worker(threadFile('writer', import.meta.url), {
@@ -95,12 +98,13 @@ export const openLog = async (options: {
     throw error
   }
   const reader = openReader(options.data)
-  const patience = options.patience_ms ?? patience_ms
+  const waits = { retry_ms, patience_ms, ...options.waits }
 
   const waiting: Job[] = []
   const flying = new Map<number, Job[]>()
   let waitingSize = 0
   let nextId = 1
+  let nextJob = 1
   let timer: NodeJS.Timeout | null = null
   let retry: NodeJS.Timeout | null = null
   let away: Outage | null = null
@@ -171,10 +175,11 @@ export const openLog = async (options: {
     flying.delete(id)
     const outage = new Outage('disk', `the disk takes no more: ${message}`)
     say(outage)
-    // Back to the head, in order: what came first is acknowledged first.
-    waiting.unshift(...jobs)
+    // Back in order, whichever batch comes back first: what came first is tried first.
+    waiting.push(...jobs)
+    waiting.sort((a, b) => a.n - b.n)
     waitingSize += jobs.reduce((sum, j) => sum + j.size, 0)
-    retry ??= setTimeout(tryAgain, retry_ms)
+    retry ??= setTimeout(tryAgain, waits.retry_ms)
   }
 
   const turnAway = (gone: (job: Job) => boolean) => {
@@ -208,10 +213,11 @@ export const openLog = async (options: {
       if (waitingSize + size > mostWaiting)
         return reject(away ?? new Outage('disk', `${waitingSize} readings wait for the disk`))
       enqueue({
+        n: nextJob++,
         arrivals,
         extra,
         size,
-        due_ms: performance.now() + patience,
+        due_ms: performance.now() + waits.patience_ms,
         settle: resolve,
         fail: reject,
       })
@@ -277,6 +283,7 @@ const alone = (refused: Refused): Refused => ({
 
 /** A write that nobody waits for, to learn whether the disk is back. */
 const question = (): Job => ({
+  n: 0,
   arrivals: [],
   extra: { refused: [], change: { meta: { 'disk asked': String(Date.now()) } } },
   size: 1,

@@ -3,8 +3,12 @@ import { Aedes, type Client } from 'aedes'
 import { Refusal } from '../../config/schema/refusal.js'
 import type { Receive } from './message.js'
 
-/** Deepest topic: the site file allows no more either, and deep ones cost the matcher dear. */
-const topicLevels = 10
+/**
+ * Deepest topic. The site file allows 10 levels, yet a device with more is heard, refused and
+ * shown like any other unknown topic: cutting it off would only make it come back for ever. Past
+ * 100 the matcher throws, so there the connection is closed.
+ */
+const topicLevels = 100
 
 /** Publishes of one connection that may be under way at once; the rest stays in its socket. */
 const concurrency = 1000

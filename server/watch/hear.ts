@@ -1,0 +1,273 @@
+import { advance, unknownsOf } from './advance.js'
+import { biasOf, sensorOf, Δ } from './estimate.js'
+import { at } from './gauss.js'
+import { temperature_C } from './matter.js'
+import { forkOdds, opensFork, returned } from './lookalikes.js'
+import { type Group, type Plan, valueAt } from './plan.js'
+import {
+  type Carried,
+  liquidSeen,
+  normalised,
+  seen,
+  type Sight,
+  sumLogs,
+  thinned,
+  weigh,
+} from './rivals.js'
+import type { Branch, Core, Fork, ItemTrack, SlotTrack } from './state.js'
+import { jumpOf } from './surroundings.js'
+import { isStuck, looksFahrenheit, runOf } from './trust.js'
+
+/** Noise of a good probe beyond its resolution, and the part of its accuracy that flickers, K. */
+const leastNoise_K = 0.03
+const flicker = 0.1
+/** A sibling is the witness's like, not the witness: this much they may differ, K. */
+const siblingNoise_K = 0.3
+
+/** How fast the scale of the innovations is learned, and its bounds. */
+const scaleGain = 0.06
+const scaleRange: readonly [number, number] = [0.4, 25]
+
+/** P(ice has formed at some time), over both stories of the probe. */
+export const turnedProbability = (track: ItemTrack): number => {
+  const of = (bank: readonly Branch[]) =>
+    bank.reduce((sum, b) => sum + (b.kind === 'liquid' ? 0 : Math.exp(b.w)), 0)
+  const own = of(track.bank)
+  if (track.fork === null) return Math.min(1, own)
+  const apart = 1 / (1 + Math.exp(-track.fork.odds))
+  return Math.min(1, (1 - apart) * own + apart * of(track.fork.bank))
+}
+
+type Told = { readonly bank: readonly Branch[]; readonly log: number; readonly z2: number }
+
+/** A bank that has seen a reading, the log density it gave it, and the best story's z². */
+const tell = (
+  all: readonly Carried[],
+  n: number,
+  sight: Sight,
+  base_C: number,
+  jump: ReturnType<typeof jumpOf>,
+): Told => {
+  let stirred = 0
+  const told = all.map((c) => {
+    if (c.branch.kind === 'ice') {
+      const by = weigh(c.branch, n, sight)
+      return { branch: seen(c.branch, n, sight, by), z2: by.z * by.z }
+    }
+    const { branch, calm, share } = liquidSeen(c, n, sight, base_C, jump)
+    stirred = Math.max(stirred, share * Math.exp(c.branch.w))
+    return { branch, z2: calm.z * calm.z * (1 - share) + share }
+  })
+  const log = sumLogs(told.map((x) => x.branch.w))
+  const heaviest = told.reduce((a, b) => (b.branch.w > a.branch.w ? b : a))
+  // What stirs the liquid story stirs the others too, so that a poor UA never looks like ice.
+  const extra = 0.3 * stirred * jump.size_K ** 2
+  const bank = told.map(({ branch }) => {
+    if (branch.kind !== 'ice' || extra < 1e-6) return branch
+    const g = [...branch.g]
+    g[at(n, Δ, Δ)] = g[at(n, Δ, Δ)]! + extra
+    return { ...branch, g }
+  })
+  return { bank: thinned(bank, n), log, z2: heaviest.z2 }
+}
+
+/** What the heaviest story expects of a slot, and how sure it is: for runs and returns. */
+const expectation = (all: readonly Carried[], n: number, sight: Sight) => {
+  const top = all.reduce((a, b) => (b.branch.w > a.branch.w ? b : a)).branch
+  const by = weigh(top, n, sight)
+  return { expected_C: top.g[sensorOf(sight.slot)]! + top.g[biasOf(sight.slot)]!, ...by }
+}
+
+/** Readings on which ice is at least this probable count towards a call. */
+const probable = 0.95
+const certain = 0.999
+const needed = 2
+
+/** Does what is known now amount to calling it turned? Once called it stays. */
+const calledBy = (track: ItemTrack, t_ms: number, trusted: boolean): Partial<ItemTrack> => {
+  const p = turnedProbability(track)
+  const strong = !trusted ? track.strong : p >= probable ? track.strong + 1 : 0
+  if (track.called !== null || !trusted) return { strong }
+  if (p >= certain || strong >= needed) {
+    const iced = track.bank.filter((b) => b.kind !== 'liquid')
+    const placed = iced.reduce((s, b) => s + (b.placedAsIce ? Math.exp(b.w) : 0), 0)
+    const placedAsIce = placed > 0.5
+    return { strong, called: { at_ms: t_ms, reckoned: placedAsIce, placedAsIce } }
+  }
+  return { strong }
+}
+
+const withSlot = (track: ItemTrack, k: number, slot: SlotTrack): ItemTrack => ({
+  ...track,
+  slots: track.slots.map((s, i) => (i === k ? slot : s)),
+})
+
+/** The probe gave back what it was lent: its story without the readings since is the true one. */
+const apart = (track: ItemTrack, fork: Fork, why: SlotTrack['apartWhy']): ItemTrack => {
+  const slot = track.slots[fork.slot]!
+  return withSlot({ ...track, bank: fork.bank, fork: null, strong: 0 }, fork.slot, {
+    ...slot,
+    trusted_ms: fork.trusted_ms,
+    trusted_C: fork.trusted_C,
+    apart_ms: fork.since_ms,
+    apartWhy: why,
+    level_C: fork.level_C,
+    back: 0,
+  })
+}
+
+/**
+ * A reading of a probe that touches an item.
+ *
+ * @param k      slot of the item
+ * @param y_C    corrected by the calibration
+ * @param raw_C  as sent
+ * @returns      the item's track with the reading put to use, or set aside for a stated reason
+ */
+export function hearOwn(
+  plan: Plan,
+  group: Group,
+  core: Core,
+  local: number,
+  k: number,
+  t_ms: number,
+  y_C: number,
+  raw_C: number,
+): ItemTrack {
+  const item = plan.items[group.items[local]!]!
+  const n = unknownsOf(item)
+  if (t_ms >= item.removed_ms) return core.items[local]!
+  const moved = advance(plan, group, core, local, t_ms)
+  let { track } = moved
+  if (track.t_ms < 0) return track
+  const kind = item.slots[k]!.kind
+  const probe = plan.probes[item.slots[k]!.probe]!
+  const last = track.slots[k]!
+  const resolution = probe.given.resolution_K
+  const noise2 =
+    leastNoise_K ** 2 + (flicker * probe.given.accuracy_K) ** 2 + last.noise_K2 * 0.5
+  const R_K2 =
+    noise2 * last.scale +
+    resolution ** 2 / 12 +
+    (kind === 'sibling' ? siblingNoise_K ** 2 : 0)
+  const sight: Sight = { slot: k, y_C, R_K2, t_ms }
+  const all = moved.carried
+  const foreseen = expectation(all, n, sight)
+  const stepExpected = last.raw_C === null ? 0 : foreseen.expected_C - (last.trusted_C ?? y_C)
+  const run = runOf(last, raw_C, t_ms, stepExpected, resolution)
+  const curb = (raw_C - (last.raw_C ?? raw_C) - (last.raw_C === null ? 0 : stepExpected)) ** 2 / 2
+  const noise_K2 =
+    run.same > 4 || last.count === 0
+      ? last.noise_K2
+      : last.noise_K2 +
+        0.05 * (Math.min(curb, 9 * Math.max(last.noise_K2, leastNoise_K ** 2)) - last.noise_K2)
+  const heard: SlotTrack = { ...last, ...run, t_ms, raw_C, noise_K2, count: last.count + 1 }
+
+  if (last.apartWhy === 'stuck' && run.same > 1) return withSlot(thinOnly(track, n), k, heard)
+  if (isStuck(heard) && last.apart_ms < 0) {
+    const from = { ...heard, trusted_ms: heard.sameFrom_ms }
+    const why = { apart_ms: heard.sameFrom_ms, apartWhy: 'stuck' as const, level_C: y_C, back: 0 }
+    const fork = track.fork?.slot === k ? null : track.fork
+    return withSlot(thinOnly({ ...track, fork, strong: 0 }, n), k, { ...from, ...why })
+  }
+  if (last.trusted_C !== null && looksFahrenheit(y_C, last.trusted_C) && foreseen.z > 5) {
+    return withSlot(thinOnly(track, n), k, {
+      ...heard,
+      apart_ms: last.apart_ms < 0 ? t_ms : last.apart_ms,
+      apartWhy: 'fahrenheit',
+      level_C: y_C,
+      back: 0,
+    })
+  }
+  if (last.apart_ms >= 0 && last.apartWhy === 'left') {
+    const back = returned(last, y_C, foreseen)
+    if (back.again)
+      track = withSlot(track, k, { ...last, apart_ms: -1, apartWhy: 'none', back: 0 })
+    else return withSlot(thinOnly(track, n), k, { ...heard, level_C: y_C, back: back.count })
+  }
+
+  const unit = plan.units[track.unit]!
+  const jump = jumpOf(unit, t_ms, track.based, moved.drive.dt_s)
+  const told = tell(all, n, sight, track.base_C, jump)
+  const scale = Math.min(
+    scaleRange[1],
+    Math.max(scaleRange[0], last.scale * (1 + scaleGain * (Math.min(told.z2, 6) - 1))),
+  )
+  const trusting: SlotTrack = {
+    ...heard,
+    scale,
+    trusted_ms: t_ms,
+    trusted_C: y_C,
+    apart_ms: -1,
+    apartWhy: 'none',
+    back: 0,
+  }
+  let fork = track.fork
+  let forkBank = moved.forked.map((c) => c.branch)
+  if (fork !== null && fork.slot === k) {
+    const inFork = tell(moved.forked, n, sight, track.base_C, jump)
+    const { odds, back } = forkOdds(fork, told.log, inFork.log, y_C, R_K2)
+    if (back) {
+      // It reads the item again: the story that had set it aside is the better one throughout.
+      const better = odds > 0
+      const bank = better ? inFork.bank : told.bank
+      track = withSlot({ ...track, bank, fork: null }, k, trusting)
+      return { ...track, ...calledBy(track, t_ms, true) }
+    }
+    fork = odds < -14 ? null : { ...fork, odds, level_C: y_C }
+    if (fork !== null && odds > 9)
+      return apart(withSlot(thinOnly(track, n), k, heard), { ...fork, bank: thinned(forkBank, n) }, 'left')
+  } else if (fork !== null) {
+    // Another probe of the item saw this: both stories of the forked one hear it.
+    const inFork = tell(moved.forked, n, sight, track.base_C, jump)
+    fork = { ...fork, odds: fork.odds + inFork.log - told.log }
+    forkBank = [...inFork.bank]
+  } else if (kind !== 'sibling') {
+    const odds = opensFork(told.log, y_C, moved.drive.dt_s, track.based ? track.base_C : null)
+    if (odds !== null) {
+      fork = {
+        slot: k,
+        since_ms: t_ms,
+        odds,
+        bank: [],
+        level_C: y_C,
+        trusted_ms: last.trusted_ms,
+        trusted_C: last.trusted_C,
+      }
+      forkBank = all.map((c) => c.branch)
+    }
+  }
+  track = withSlot(
+    {
+      ...track,
+      bank: told.bank,
+      fork: fork === null ? null : { ...fork, bank: thinned(forkBank, n) },
+    },
+    k,
+    trusting,
+  )
+  const doubtful = track.fork !== null && track.fork.odds > 0
+  return { ...track, ...calledBy(track, t_ms, !doubtful && kind !== 'sibling') }
+}
+
+const thinOnly = (track: ItemTrack, n: number): ItemTrack => ({
+  ...track,
+  bank: thinned(normalised(track.bank), n),
+  fork: track.fork === null ? null : { ...track.fork, bank: thinned(track.fork.bank, n) },
+})
+
+/** The temperature of the surroundings that an item's own readings speak of, and its uncertainty. */
+export function surroundingsOf(
+  plan: Plan,
+  group: Group,
+  track: ItemTrack,
+  local: number,
+): { env_C: number; u_K: number } {
+  const item = plan.items[group.items[local]!]!
+  const n = unknownsOf(item)
+  const top = track.bank.reduce((a, b) => (b.w > a.w ? b : a))
+  const matter = valueAt(item.matter, track.t_ms)
+  const env = { env_C: track.base_C + top.g[Δ]!, u_K: Math.sqrt(top.g[at(n, Δ, Δ)]!) }
+  if (top.kind === 'ice' || env.u_K < 1.5) return env
+  return { env_C: temperature_C(matter, false, top.g[0]!), u_K: 2 }
+}

@@ -1,0 +1,72 @@
+import type { Phase } from '../../config/schema/verdict.js'
+import { type Plan, type PlannedItem, valueAt } from './plan.js'
+import { type Estimate, reckoned } from './reckon.js'
+import { reckonedTurn } from './hazard.js'
+import type { ItemTrack } from './state.js'
+
+/** Solid from this share of the ice at −20 °C on, and no longer below that (rulings.md 7). */
+const solidFrom = 0.9
+const solidUntil = 0.85
+/** More ice is freezing, less is thawing: against half an hour ago, by at least this, kg/kg. */
+const lookBack_ms = 30 * 60_000
+const iceStep_kg_kg = 0.01
+/** How often the ice of the estimate is noted, ms. */
+const note_ms = 5 * 60_000
+
+/** The phase of an estimate, given the last one (rulings.md 7). */
+export function phaseOf(
+  track: ItemTrack,
+  estimate: Estimate,
+  solidIce_kg_kg: number,
+  confidence: number,
+): Phase {
+  const last = track.phase
+  const iced = track.called !== null ? estimate.icy >= 0.5 : estimate.icy >= 0.95
+  if (!iced) {
+    if (estimate.below >= confidence) return 'supercooled'
+    if (estimate.below <= 1 - confidence) return 'liquid'
+    if (last === 'liquid' || last === 'supercooled') return last
+    return estimate.below >= 0.5 ? 'supercooled' : 'liquid'
+  }
+  const share = estimate.ice_kg_kg / Math.max(1e-6, estimate.icy) / solidIce_kg_kg
+  if (share >= solidFrom || (last === 'frozen' && share >= solidUntil)) return 'frozen'
+  const then = track.ice.findLast(([t]) => t <= track.t_ms - lookBack_ms) ?? track.ice[0]
+  const grown = then === undefined ? 0 : estimate.ice_kg_kg - then[1]
+  if (grown >= iceStep_kg_kg) return 'freezing'
+  if (grown <= -iceStep_kg_kg) return 'thawing'
+  if (last === 'freezing' || last === 'thawing') return last
+  return last === 'frozen' ? 'thawing' : 'freezing'
+}
+
+/**
+ * What follows a step on the track of the readings: the phase, the ice noted for the next half hour,
+ * and a turn that depth and time alone make sure of (rulings.md 3).
+ *
+ * @param own  a probe of the item itself was heard
+ */
+export function followed(
+  plan: Plan,
+  item: PlannedItem,
+  track: ItemTrack,
+  own: boolean,
+): ItemTrack {
+  if (track.t_ms < 0 || track.bank.length === 0) return track
+  const matter = item.matter[track.matter]!.value
+  const estimate = reckoned(plan, item, track)
+  const policy = valueAt(plan.policy, track.t_ms)
+  const last = track.ice.at(-1)
+  const noted =
+    last === undefined || track.t_ms - last[0] >= note_ms
+      ? [
+          ...track.ice.filter(([t]) => t > track.t_ms - lookBack_ms - 2 * note_ms),
+          [track.t_ms, estimate.ice_kg_kg] as const,
+        ]
+      : track.ice
+  const next = { ...track, ice: noted }
+  const called = track.called ?? (own ? null : reckonedTurn(plan, item, track, estimate))
+  return {
+    ...next,
+    called,
+    phase: phaseOf({ ...next, called }, estimate, matter.solidIce_kg_kg, policy.belowConfidence),
+  }
+}
