@@ -1,70 +1,73 @@
-import { Refusal } from '../../config/schema/refusal.js'
-import { pureMelting_C, waterMolarMass_kg_mol } from './constants.js'
+import { coldestLiquid_C, pureMelting_C, warmest_C, waterMolarMass_kg_mol } from './constants.js'
+import { within_C } from './range.js'
 
 /**
  * Osmolality of the liquid that is in equilibrium with ice at a temperature.
  *
- *     π_eq = 0.536904935 θ + 4.04979071e-4 θ² − 1.10009837e-5 θ³      θ = pureMelting_C − t
+ *     π_eq = 0.536904935 θ + 4.04979071e-4 θ² − 1.10009837e-5 θ³     θ = pureMelting_C − t_C
  *
  * @param t_C  −40 … +60 °C. At and above the melting point there is no such ice: 0.
  * @returns    osmol per kg water, within 0.20 % of the IAPWS formulations
  * @throws     Refusal 'out-of-range' outside; below −40 °C G12-15 stops being physical
- * @source     cubic fitted here to G12-15 (Holten et al. 2014, J. Phys. Chem. Ref. Data 43,
- *             043101) and R10-06(2009)
+ * @source     cubic fitted to G12-15 (Holten et al. 2014, J. Phys. Chem. Ref. Data 43, 043101)
+ *             and R10-06(2009)
  */
 export function equilibriumOsmolality_osmol_kg(t_C: number): number {
-  if (!(t_C >= -40 && t_C <= 60))
-    throw new Refusal(
-      'out-of-range',
-      't_C',
-      t_C,
-      'the fit holds from −40 °C up',
-      'clamp and report it',
-    )
-  const θ = Math.max(0, pureMelting_C - t_C)
-  return θ * (0.536904935 + θ * (4.04979071e-4 - θ * 1.10009837e-5))
+  return osmolalityAt(within_C(t_C, coldestLiquid_C, warmest_C, 'liquid beside ice'))
 }
 
-/** dπ_eq/dt, osmol/(kg K); 0 where there is no ice. Same range and source as π_eq. */
-export function equilibriumOsmolalitySlope(t_C: number): number {
-  const θ = pureMelting_C - t_C
-  return θ <= 0 ? 0 : -(0.536904935 + θ * (2 * 4.04979071e-4 - θ * 3 * 1.10009837e-5))
+/** Depth of the fit below the melting point, K. */
+const θend = pureMelting_C - coldestLiquid_C
+const cubic = (θ: number): number => θ * (0.536904935 + θ * (4.04979071e-4 - θ * 1.10009837e-5))
+const slope = (θ: number): number => 0.536904935 + θ * (8.09958142e-4 - θ * 3.30029511e-5)
+const πend = cubic(θend)
+const slopeEnd = slope(θend)
+
+/**
+ * `equilibriumOsmolality_osmol_kg` for callers that hold the range themselves. Below −40 °C it goes
+ * on as a straight line (1.4 % above Murphy and Koop 2005 at −50 °C, 5 % at −60 °C), so that the
+ * freezing point of a very strong solution is a number; whoever uses it flags it extrapolated.
+ */
+export function osmolalityAt(t: number): number {
+  const θ = pureMelting_C - t
+  if (θ <= 0) return 0
+  return θ <= θend ? cubic(θ) : πend + slopeEnd * (θ - θend)
+}
+
+/** −dπ_eq/dt, osmol/(kg K): how much more concentrated the liquid is for a kelvin colder. */
+export function osmolalitySlope(t: number): number {
+  const θ = pureMelting_C - t
+  return θ <= θend ? slope(Math.max(0, θ)) : slopeEnd
 }
 
 /**
- * Temperature at which ice is in equilibrium with a liquid: π_eq solved for t by Newton's method.
+ * Temperature at which a liquid of an osmolality is in equilibrium with ice: its freezing point.
  *
- * @param osmolality_osmol_kg  0 … about 21.1 (that of −40 °C)
- * @returns  °C
- * @throws   Refusal 'out-of-range'
- * @source   the inverse of `equilibriumOsmolality_osmol_kg`
+ * @param π_osmol_kg  0 or more; above 21.4 (−40 °C) extrapolated, see `osmolalityAt`
+ * @returns           °C, the inverse of π_eq to 1e-12 K
  */
-export function equilibriumTemperature_C(osmolality_osmol_kg: number): number {
-  const most = equilibriumOsmolality_osmol_kg(-40)
-  if (!(osmolality_osmol_kg >= 0 && osmolality_osmol_kg <= most))
-    throw new Refusal(
-      'out-of-range',
-      'osmolality_osmol_kg',
-      osmolality_osmol_kg,
-      `it lies between 0 and ${most.toFixed(2)} (that of ice at −40 °C)`,
-      'give osmol per kg of water',
-    )
-  let t = pureMelting_C - osmolality_osmol_kg * 1.8626
-  for (let i = 0; i < 20; i++) {
-    const Δ =
-      (equilibriumOsmolality_osmol_kg(Math.max(-40, t)) - osmolality_osmol_kg) /
-      equilibriumOsmolalitySlope(Math.max(-40, Math.min(t, 0)))
-    t = Math.max(-40, t - Δ)
-    if (Math.abs(Δ) < 1e-12) break
+export function equilibriumTemperature_C(π_osmol_kg: number): number {
+  const π = π_osmol_kg
+  if (!(π > 0)) return pureMelting_C
+  if (π >= πend) return pureMelting_C - θend - (π - πend) / slopeEnd
+  // The cubic bends so little that Newton from the straight line ends in four steps.
+  let θ = π / 0.536904935
+  for (let k = 0; k < 12; k++) {
+    const step = (cubic(θ) - π) / slope(θ)
+    θ -= step
+    if (Math.abs(step) < 1e-13 * (1 + θ)) break
   }
-  return t
+  return pureMelting_C - θ
 }
 
 /**
- * Activity of water in a liquid of an osmolality: a_w = exp(−π M_w), the definition of osmolality.
+ * Water activity of a liquid of an osmolality.
  *
- * @param osmolality_osmol_kg  from 0
+ *     a_w = exp(−π M_w)
+ *
+ * @param π_osmol_kg  0 or more
+ * @returns           1 for pure water
  */
-export function waterActivity(osmolality_osmol_kg: number): number {
-  return Math.exp(-osmolality_osmol_kg * waterMolarMass_kg_mol)
+export function waterActivity(π_osmol_kg: number): number {
+  return Math.exp(-π_osmol_kg * waterMolarMass_kg_mol)
 }

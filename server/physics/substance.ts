@@ -1,189 +1,264 @@
 import type { Freezing, ProductPhysics, Stop } from '../../config/schema/product.js'
 import { Refusal } from '../../config/schema/refusal.js'
-import { pureMelting_C } from './constants.js'
-import {
-  equilibriumOsmolality_osmol_kg,
-  equilibriumOsmolalitySlope,
-  equilibriumTemperature_C,
-} from './equilibrium.js'
-import { boundWater_kg_kg, otherParts_cp_kJ_kgK } from './food.js'
-import { type SoluteTable, type Term, termsOf, waterPerMol_kg } from './solution.js'
+import { coldestLiquid_C, pureMelting_C } from './constants.js'
+import { equilibriumTemperature_C, osmolalityAt, osmolalitySlope } from './equilibrium.js'
+import { boundPerProtein, foodOtherCp_kJ_kgK } from './food.js'
+import { liquidWater_kg_kg, type SoluteTable, solutionOf, type WaterDemand } from './solution.js'
+import { cpOfLiquid, iceCp_kJ_kgK } from './water.js'
 
-/** A product as the physics sees it, whichever of the five forms it was given in. */
+/** A product as its water demand: one formulation for pharma and food. */
 export type Substance = {
+  readonly freezingPoint_C: number
+  /** Standard uncertainty of the freezing point, K. */
+  readonly freezingPoint_u_K: number
+  /** Osmolality while it holds no ice, osmol per kg of water. */
+  readonly osmolality_osmol_kg: number
+  readonly water_kg_kg: number
+  /** Water that never freezes. */
+  readonly bound_kg_kg: number
+  /** w_liq(π) = N/π + B + Gπ + Dπ², by ranges of π. */
+  readonly pieces: readonly WaterDemand[]
+  /** Apparent heat capacity of all that is not water, kJ per kg of it and K; below 0 for salts. */
+  readonly otherCp_kJ_kgK: number
+  /** Below it nothing more freezes; null: freeze concentration goes on to −40 °C. */
+  readonly stop: Stop | null
+  /** The freezing point itself lies beyond the fit of a solute, or below −40 °C. */
+  readonly extrapolated: boolean
+  /** Ice colder than this rests on an extrapolated fit; null where no fit ends above −40 °C. */
+  readonly extrapolatedBelow_C: number | null
+}
+
+/** What a form says, before uncertainty and stop are settled. */
+type Core = {
   readonly water_kg_kg: number
   readonly bound_kg_kg: number
+  readonly pieces: readonly WaterDemand[]
   readonly freezingPoint_C: number
-  readonly freezingPoint_u_K: number
-  /** Osmolality of the liquid before any ice. */
-  readonly osmolality_osmol_kg: number
-  /** Osmol per kg of product, where the form gives no solutes. */
-  readonly ideal_osmol_kg: number
-  readonly terms: readonly Term[]
-  readonly other_cp_kJ_kgK: number
-  readonly stop: Stop | null
+  readonly otherCp_kJ_kgK: number
+  readonly fitEnd_osmol_kg: number
 }
 
-/** Coldest temperature of the equilibrium relation; with no stop, freezing ends there. */
-export const coldestEquilibrium_C = -40
-
-/**
- * Liquid water left in equilibrium with ice, kg per kg of product:
- *
- *     w_liq = N/π + B + Σ n_i (1/m_i(π))
- *
- * @param π  osmolality, above 0
- */
-export function liquidWater_kg_kg(
-  s: Pick<Substance, 'ideal_osmol_kg' | 'bound_kg_kg' | 'terms'>,
-  π: number,
-): number {
-  let w = s.ideal_osmol_kg / π + s.bound_kg_kg
-  for (const term of s.terms) w += term.n_mol_kg * waterPerMol_kg(term, π)
-  return w
-}
-
-/** Heat capacity of solutes by class, kJ/(kg K) (rulings.md 8; salts after gsw cp of seawater). */
-const cpOfClass = { salt: -2.7, other: 1.4, glycol: 2.4 } as const
-
-/** Standard uncertainty where a product states none: of a measured point, relative of an osmolality… */
-const standardU = {
-  measured_K: 0.02,
-  osmolality: 0.02,
-  solution: 0.03,
-  food_K: 0.3,
-  water_K: 0.002,
+/** A standard uncertainty of the freezing point where the product states none, and its reason. */
+const defaults = {
+  /** Cryoscope or osmometer in daily use: ±0.01–0.02 K [common practice]. */
+  measured: { u_K: 0.02 },
+  /** Freezing-point osmometer, 2 % [common practice]. */
+  osmolality: { relU: 0.02 },
+  /** Composition: fit and mixing rule ±2–3 % of the depression. */
+  solution: { relU: 0.03 },
+  /** Tables of foods: ±0.2–0.5 K between samples (ASHRAE Refrigeration). */
+  food: { u_K: 0.3 },
+  /** Air-free or air-saturated, 2.4 mK apart: half of it. */
+  water: { u_K: 0.0012 },
 } as const
 
-type Core = Pick<
-  Substance,
-  | 'water_kg_kg'
-  | 'bound_kg_kg'
-  | 'ideal_osmol_kg'
-  | 'terms'
-  | 'other_cp_kJ_kgK'
-  | 'osmolality_osmol_kg'
->
+/** Apparent heat capacity of what is dissolved, where only an osmolality or a point is known. */
+const unknownSolutesCp_kJ_kgK = 1.4
 
-const coreOf = (f: Freezing, table: SoluteTable): Core => {
-  if (f.kind === 'water')
-    return {
-      water_kg_kg: 1,
-      bound_kg_kg: 0,
-      ideal_osmol_kg: 0,
-      terms: [],
-      other_cp_kJ_kgK: 1.4,
-      osmolality_osmol_kg: 0,
-    }
-  if (f.kind === 'solution') {
-    const terms = termsOf(f.solutes, table)
-    const solute_kg_kg = f.solutes.reduce((sum, x) => sum + x.kg_kg, 0)
-    const water_kg_kg = 1 - solute_kg_kg
-    const cp =
-      solute_kg_kg === 0
-        ? 1.4
-        : terms.reduce(
-            (sum, t) =>
-              sum + ((t.n_mol_kg * t.solute.molarMass_g_mol) / 1000) * cpOfClass[t.solute.class],
-            0,
-          ) / solute_kg_kg
-    const core = {
-      water_kg_kg,
-      bound_kg_kg: 0,
-      ideal_osmol_kg: 0,
-      terms,
-      other_cp_kJ_kgK: cp,
-      osmolality_osmol_kg: 0,
-    }
-    return {
-      ...core,
-      osmolality_osmol_kg: terms.length === 0 ? 0 : osmolalityHolding(core, water_kg_kg),
-    }
-  }
-  const bound_kg_kg = f.kind === 'food' ? boundWater_kg_kg(f) : f.bound_kg_kg
-  if (bound_kg_kg >= f.water_kg_kg)
+/** No freezing point is stated below this: a solution so strong does not freeze in any store. */
+const coldestFreezing_C = -100
+
+const ofNoFit = Number.POSITIVE_INFINITY
+
+const demand = (N: number, B: number): WaterDemand[] => [
+  { to_osmol_kg: Number.POSITIVE_INFINITY, N, B, G: 0, D: 0 },
+]
+
+const freezable = (water_kg_kg: number, bound_kg_kg: number): number => {
+  if (!(water_kg_kg > 0))
     throw new Refusal(
-      'no-free-water',
+      'no-water',
+      'freezing.water_kg_kg',
+      water_kg_kg,
+      'without water nothing freezes here',
+      'give kg of water per kg of product, above 0',
+    )
+  if (!(bound_kg_kg < water_kg_kg))
+    throw new Refusal(
+      'all-bound',
       'freezing.bound_kg_kg',
       bound_kg_kg,
-      `all of the water (${f.water_kg_kg}) is bound`,
-      'give less bound water, or more water',
+      `all of the water (${water_kg_kg} kg/kg) would be bound`,
+      'give less bound water than water',
     )
-  const π =
-    f.kind === 'osmolality'
-      ? f.osmolality_osmol_kg
-      : equilibriumOsmolality_osmol_kg(Math.max(coldestEquilibrium_C, f.freezingPoint_C))
+  return water_kg_kg - bound_kg_kg
+}
+
+/** N from the point at which the first ice forms. */
+const fromPoint = (
+  given_C: number,
+  water_kg_kg: number,
+  bound_kg_kg: number,
+): Omit<Core, 'otherCp_kJ_kgK'> => {
+  const free = freezable(water_kg_kg, bound_kg_kg)
+  const freezingPoint_C = Math.min(given_C, pureMelting_C)
   return {
-    water_kg_kg: f.water_kg_kg,
+    water_kg_kg,
     bound_kg_kg,
-    ideal_osmol_kg: π * (f.water_kg_kg - bound_kg_kg),
-    terms: [],
-    other_cp_kJ_kgK: f.kind === 'food' ? otherParts_cp_kJ_kgK(f) : 1.4,
-    osmolality_osmol_kg: π,
+    pieces: demand(osmolalityAt(freezingPoint_C) * free, bound_kg_kg),
+    freezingPoint_C,
+    fitEnd_osmol_kg: ofNoFit,
   }
 }
 
-/** Osmolality at which so much liquid water is held: `liquidWater_kg_kg` solved by bisection. */
-function osmolalityHolding(
-  s: Pick<Substance, 'ideal_osmol_kg' | 'bound_kg_kg' | 'terms'>,
-  water_kg_kg: number,
-): number {
-  let low = 1e-9
-  let high = equilibriumOsmolality_osmol_kg(coldestEquilibrium_C)
-  if (liquidWater_kg_kg(s, high) > water_kg_kg)
-    throw new Refusal(
-      'too-concentrated',
-      'freezing.solutes',
-      water_kg_kg,
-      'it freezes below −40 °C, which the equations do not reach',
-      'give a measured freezing point, or a weaker solution',
-    )
-  for (let i = 0; i < 100; i++) {
+/** Osmolality at which all of the water is wanted: w_liq(π) = w0. */
+function osmolalityOf(pieces: readonly WaterDemand[], water_kg_kg: number): number {
+  let low = 0
+  let high = 1
+  for (let k = 0; k < 40 && liquidWater_kg_kg(pieces, high) > water_kg_kg; k++) {
+    low = high
+    high *= 2
+  }
+  for (let k = 0; k < 100 && high - low > 1e-15 * high; k++) {
     const middle = (low + high) / 2
-    if (liquidWater_kg_kg(s, middle) > water_kg_kg) low = middle
+    if (liquidWater_kg_kg(pieces, middle) > water_kg_kg) low = middle
     else high = middle
   }
   return (low + high) / 2
 }
 
-const uncertainty_K = (f: Freezing, π: number, freezingPoint_C: number): number => {
-  if (f.u_K !== undefined) return f.u_K
-  const perOsmol_K = 1 / Math.abs(equilibriumOsmolalitySlope(Math.min(freezingPoint_C, 0)))
-  const relative = (relU: number) => relU * π * perOsmol_K
-  if (f.relU !== undefined) return relative(f.relU)
-  switch (f.kind) {
+function coreOf(freezing: Freezing, table: SoluteTable): Core {
+  switch (freezing.kind) {
     case 'measured':
-      return standardU.measured_K
-    case 'osmolality':
-      return relative(standardU.osmolality)
-    case 'solution':
-      return relative(standardU.solution)
+      return {
+        ...fromPoint(freezing.freezingPoint_C, freezing.water_kg_kg, freezing.bound_kg_kg),
+        otherCp_kJ_kgK: unknownSolutesCp_kJ_kgK,
+      }
+    case 'osmolality': {
+      const free = freezable(freezing.water_kg_kg, freezing.bound_kg_kg)
+      return {
+        water_kg_kg: freezing.water_kg_kg,
+        bound_kg_kg: freezing.bound_kg_kg,
+        pieces: demand(freezing.osmolality_osmol_kg * free, freezing.bound_kg_kg),
+        freezingPoint_C: equilibriumTemperature_C(freezing.osmolality_osmol_kg),
+        otherCp_kJ_kgK: unknownSolutesCp_kJ_kgK,
+        fitEnd_osmol_kg: ofNoFit,
+      }
+    }
+    case 'solution': {
+      const solution = solutionOf(freezing.solutes, table, 'freezing.solutes')
+      freezable(solution.water_kg_kg, 0)
+      return {
+        ...solution,
+        bound_kg_kg: 0,
+        freezingPoint_C: equilibriumTemperature_C(
+          osmolalityOf(solution.pieces, solution.water_kg_kg),
+        ),
+      }
+    }
     case 'food':
-      return standardU.food_K
+      return {
+        ...fromPoint(
+          freezing.freezingPoint_C,
+          freezing.water_kg_kg,
+          freezing.bound_kg_kg ?? boundPerProtein * freezing.protein_kg_kg,
+        ),
+        otherCp_kJ_kgK: foodOtherCp_kJ_kgK(freezing, 0) ?? unknownSolutesCp_kJ_kgK,
+      }
     case 'water':
-      return standardU.water_K
+      return {
+        ...fromPoint(pureMelting_C, 1, 0),
+        otherCp_kJ_kgK: unknownSolutesCp_kJ_kgK,
+      }
   }
 }
 
+const stopOf = (product: ProductPhysics, freezingPoint_C: number): Stop | null => {
+  if (product.stop !== undefined && product.stop_C !== undefined)
+    throw new Refusal(
+      'given-twice',
+      'stop_C',
+      product.stop_C,
+      'the stop is given twice',
+      'give `stop` or `stop_C`, not both',
+    )
+  const stop =
+    product.stop ??
+    (product.stop_C === undefined ? null : { T_C: product.stop_C, kind: 'glass' as const })
+  if (stop !== null && !(stop.T_C < freezingPoint_C))
+    throw new Refusal(
+      'stop-above-freezing',
+      product.stop === undefined ? 'stop_C' : 'stop.T_C',
+      stop.T_C,
+      `freezing would stop before it begins, at ${freezingPoint_C.toFixed(2)} °C`,
+      'give the eutectic or glass temperature of the freeze-concentrated liquid',
+    )
+  // Colder than the coldest liquid it stops nothing that the model can freeze.
+  return stop !== null && stop.T_C > coldestLiquid_C ? stop : null
+}
+
+/** Standard uncertainty of the freezing point: what is given, else the default of the form. */
+const uncertaintyOf = (
+  freezing: Freezing,
+  freezingPoint_C: number,
+  extrapolated: boolean,
+): number => {
+  const given =
+    freezing.u_K !== undefined || freezing.relU !== undefined ? freezing : defaults[freezing.kind]
+  const π = osmolalityAt(freezingPoint_C)
+  const ofOsmolality = (π / osmolalitySlope(freezingPoint_C)) * (extrapolated ? 2 : 1)
+  const u = 'u_K' in given ? (given.u_K ?? 0) : 0
+  const rel = 'relU' in given ? (given.relU ?? 0) : 0
+  return Math.hypot(u, rel * ofOsmolality)
+}
+
+/** The least that a kilogram of product may take up per kelvin, kJ/(kg K): more than rounding. */
+const leastCp_kJ_kgK = 0.02
+/** Where it is looked at: the liquid's own least, and ice at any depth, °C. */
+const looked_C = [25, 0, -2, -5, -10, -15, -20, -25, -30, -35, -40]
+
+/** Without latent heat, what either branch takes up must be above 0, or no enthalpy names a T. */
+const mustHoldHeat = (core: Core, otherCp_kJ_kgK: number, stop: Stop | null): void => {
+  const other = (1 - core.water_kg_kg) * otherCp_kJ_kgK
+  const holds = looked_C.every((t) => {
+    const liquid = core.water_kg_kg * cpOfLiquid(t) + other
+    if (t >= core.freezingPoint_C) return liquid > leastCp_kJ_kgK
+    const solid = stop?.kind === 'eutectic' && t < stop.T_C
+    const left = solid
+      ? core.bound_kg_kg
+      : liquidWater_kg_kg(core.pieces, osmolalityAt(Math.max(t, stop?.T_C ?? t)))
+    const onIce = left * cpOfLiquid(t) + (core.water_kg_kg - left) * iceCp_kJ_kgK(t) + other
+    return Math.min(liquid, onIce) > leastCp_kJ_kgK
+  })
+  if (holds) return
+  throw new Refusal(
+    'no-heat-capacity',
+    'liquidOther_cp_kJ_kgK',
+    otherCp_kJ_kgK,
+    'the product would give off heat when warmed',
+    'give the apparent heat capacity of all that is not water; dissolved salts have about −2.7',
+  )
+}
+
 /**
- * A product in the one form that the curves work with.
+ * A product as one substance, whichever of the five forms says how it freezes.
  *
- * @param solutes  config/library/solutes.json
- * @throws Refusal for an unknown solute, or where no free water is left
+ *     ice x(t) = w0 − w_liq(π_eq(t))       first ice where w_liq = w0
+ *
+ * @param product  fractions in kg per kg of product
+ * @param table    the solute table (config/library/solutes.json)
+ * @throws         Refusal with the field: unknown solute, no free water, a stop above the freezing
+ *                 point, a heat capacity that cannot be
  */
-export function substanceOf(product: ProductPhysics, solutes: SoluteTable): Substance {
-  const core = coreOf(product.freezing, solutes)
-  const freezingPoint_C =
-    core.osmolality_osmol_kg === 0
-      ? pureMelting_C
-      : equilibriumTemperature_C(core.osmolality_osmol_kg)
+export function substanceOf(product: ProductPhysics, table: SoluteTable): Substance {
+  const core = coreOf(product.freezing, table)
+  const freezingPoint_C = Math.max(core.freezingPoint_C, coldestFreezing_C)
+  const π = osmolalityAt(freezingPoint_C)
+  const otherCp_kJ_kgK = product.liquidOther_cp_kJ_kgK ?? core.otherCp_kJ_kgK
+  const stop = stopOf(product, freezingPoint_C)
+  mustHoldHeat(core, otherCp_kJ_kgK, stop)
+  const extrapolated = π > core.fitEnd_osmol_kg || freezingPoint_C < coldestLiquid_C
+  const fitEnd_C = equilibriumTemperature_C(core.fitEnd_osmol_kg)
   return {
-    ...core,
-    other_cp_kJ_kgK: product.liquidOther_cp_kJ_kgK ?? core.other_cp_kJ_kgK,
     freezingPoint_C,
-    freezingPoint_u_K: uncertainty_K(product.freezing, core.osmolality_osmol_kg, freezingPoint_C),
-    stop:
-      product.stop ??
-      (product.stop_C === undefined ? null : { T_C: product.stop_C, kind: 'glass' }),
+    freezingPoint_u_K: uncertaintyOf(product.freezing, freezingPoint_C, extrapolated),
+    osmolality_osmol_kg: π,
+    water_kg_kg: core.water_kg_kg,
+    bound_kg_kg: core.bound_kg_kg,
+    pieces: core.pieces,
+    otherCp_kJ_kgK,
+    stop,
+    extrapolated,
+    extrapolatedBelow_C: fitEnd_C > coldestLiquid_C ? fitEnd_C : null,
   }
 }

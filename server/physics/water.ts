@@ -1,120 +1,154 @@
-import { Refusal } from '../../config/schema/refusal.js'
+import { coldestFrozen_C, coldestLiquid_C, warmest_C } from './constants.js'
+import { within_C } from './range.js'
+
+/** Where the pole of the liquid's heat capacity stands, as a share of 100 K below 0 °C. */
+const pole = 0.500493236
 
 /**
- * Water and ice at 101 325 Pa, by fits made here to IAPWS G12-15 (Holten, Sengers, Anisimov 2014,
- * J. Phys. Chem. Ref. Data 43, 043101), IAPWS-95 and R10-06(2009) (Feistel, Wagner 2006).
- * test/reference holds the IAPWS values and the script that made them.
+ * Heat capacity of liquid water, supercooled or not, at 101 325 Pa.
+ *
+ *     c = 4.10981677 + 3.99740568e-4 t + 2.56457043e-5 t² + 2.71029880e-2/(t/100 + 0.500493236)²
+ *
+ * The pole carries the rise on supercooling: 4.22 at 0, 4.41 at −20, 6.0 kJ/(kg K) at −38 °C.
+ *
+ * @param t_C  −40 … +60 °C
+ * @returns    kJ/(kg K), within 0.35 % to 30 °C and 1.6 % to 60 °C
+ * @throws     Refusal 'out-of-range'
+ * @source     fitted to IAPWS G12-15 (Holten et al. 2014, J. Phys. Chem. Ref. Data 43, 043101)
+ *             and IAPWS-95 above 27 °C
  */
+export function liquidCp_kJ_kgK(t_C: number): number {
+  return cpOfLiquid(within_C(t_C, coldestLiquid_C, warmest_C, 'liquid water'))
+}
 
-/** Below it the equation for supercooled water stops being physical (cp diverges near −45 °C). */
-export const coldestLiquid_C = -40
-/** Top of the range, well above any storage: the fits end at 30 °C and are smooth beyond. */
-export const warmest_C = 60
-export const coldestIce_C = -100
-
-const within = (field: string, t_C: number, low_C: number, high_C: number, what: string): void => {
-  if (!(t_C >= low_C && t_C <= high_C))
-    // written this way round, NaN is refused too
-    throw new Refusal(
-      'out-of-range',
-      field,
-      t_C,
-      `${what} is known from ${low_C} to ${high_C} °C`,
-      'give a temperature within it',
-    )
+/** `liquidCp_kJ_kgK` for callers that hold the range themselves. */
+export function cpOfLiquid(t: number): number {
+  const u = t / 100 + pole
+  return 4.10981677 + t * (3.99740568e-4 + t * 2.56457043e-5) + 2.7102988e-2 / (u * u)
 }
 
 /**
- * Isobaric heat capacity of liquid water, supercooled included.
+ * Enthalpy of liquid water from 0 °C: the primitive of `liquidCp_kJ_kgK`.
  *
- *     cp = 4.10981677 + 3.99740568e-4 t + 2.56457043e-5 t² + 2.71029880e-2 / (t/100 + 0.500493236)²
- *
- * @param t_C  −40 … 60 °C
- * @returns    kJ/(kg K), within 0.35 % of G12-15 from −40 to 30 °C
+ * @param t_C  −40 … +60 °C
+ * @returns    kJ/kg, within 0.075 kJ/kg to 30 °C and 1 kJ/kg to 60 °C
  * @throws     Refusal 'out-of-range'
- * @source     fit made here to IAPWS G12-15
+ * @source     as `liquidCp_kJ_kgK`
  */
-export function liquid_cp_kJ_kgK(t_C: number): number {
-  within('t_C', t_C, coldestLiquid_C, warmest_C, 'liquid water')
-  const u = t_C / 100 + 0.500493236
-  return 4.10981677 + t_C * (3.99740568e-4 + t_C * 2.56457043e-5) + 2.7102988e-2 / (u * u)
+export function liquidWaterEnthalpy_kJ_kg(t_C: number): number {
+  return hOfLiquid(within_C(t_C, coldestLiquid_C, warmest_C, 'liquid water'))
 }
 
-/**
- * Enthalpy of liquid water relative to 0 °C: the integral of `liquid_cp_kJ_kgK`.
- *
- *     h = 4.10981677 t + 1.99870284e-4 t² + 8.5485681e-6 t³
- *         − 2.71029880 [ 1/(t/100 + 0.500493236) − 1/0.500493236 ]
- *
- * @param t_C  −40 … 60 °C
- * @returns    kJ/kg, within 0.075 kJ/kg of G12-15
- * @throws     Refusal 'out-of-range'
- * @source     fit made here to IAPWS G12-15
- */
-export function liquid_h_kJ_kg(t_C: number): number {
-  within('t_C', t_C, coldestLiquid_C, warmest_C, 'liquid water')
+/** `liquidWaterEnthalpy_kJ_kg` for callers that hold the range themselves. */
+export function hOfLiquid(t: number): number {
   return (
-    t_C * (4.10981677 + t_C * (1.99870284e-4 + t_C * 8.5485681e-6)) -
-    2.7102988 * (1 / (t_C / 100 + 0.500493236) - 1 / 0.500493236)
+    t * (4.10981677 + t * (1.99870284e-4 + t * 8.5485681e-6)) -
+    2.7102988 * (1 / (t / 100 + pole) - 1 / pole)
   )
 }
 
 /**
- * Isobaric heat capacity of ice Ih.
+ * Entropy of liquid water from 0 °C, the integral of c dT/T by five-point Gauss quadrature on
+ * four equal parts.
  *
- *     cp = 2.09699466 + 7.41602152e-3 t + 2.58176795e-6 t²
- *
- * @param t_C  −100 … 0.01 °C
- * @returns    kJ/(kg K), within 0.016 % from −80 to 0 °C
+ * @param t_C  −40 … +60 °C
+ * @returns    kJ/(kg K), as good as `liquidCp_kJ_kgK`
  * @throws     Refusal 'out-of-range'
- * @source     fit made here to IAPWS R10-06(2009)
  */
-export function ice_cp_kJ_kgK(t_C: number): number {
-  within('t_C', t_C, coldestIce_C, 0.01, 'ice')
-  return 2.09699466 + t_C * (7.41602152e-3 + t_C * 2.58176795e-6)
+export function liquidWaterEntropy_kJ_kgK(t_C: number): number {
+  within_C(t_C, coldestLiquid_C, warmest_C, 'liquid water')
+  return integral((t) => cpOfLiquid(t) / (t + 273.15), 0, t_C, 4)
 }
 
 /**
- * Enthalpy of ice relative to ice at 0 °C: the integral of `ice_cp_kJ_kgK`.
+ * Density of liquid water at 101 325 Pa.
  *
- * @param t_C  −100 … 0.01 °C
- * @returns    kJ/kg
+ * @param t_C  −40 … +30 °C
+ * @returns    kg/m³, within 0.078 %
  * @throws     Refusal 'out-of-range'
- * @source     as `ice_cp_kJ_kgK`
+ * @source     fitted to IAPWS G12-15 (Holten et al. 2014)
  */
-export function ice_h_kJ_kg(t_C: number): number {
-  within('t_C', t_C, coldestIce_C, 0.01, 'ice')
-  return t_C * (2.09699466 + t_C * (7.41602152e-3 / 2 + (t_C * 2.58176795e-6) / 3))
-}
-
-/**
- * Density of liquid water, supercooled included.
- *
- * @param t_C  −40 … 30 °C
- * @returns    kg/m³, within 0.078 % of G12-15
- * @throws     Refusal 'out-of-range'
- * @source     fit made here to IAPWS G12-15
- */
-export function liquid_density_kg_m3(t_C: number): number {
-  within('t_C', t_C, coldestLiquid_C, 30, 'the density of water')
+export function liquidDensity_kg_m3(t_C: number): number {
+  const t = within_C(t_C, coldestLiquid_C, 30, 'the density of liquid water')
   return (
     999.816046 +
-    t_C *
+    t *
       (8.7942662e-2 +
-        t_C *
-          (-8.86534313e-3 + t_C * (1.03738936e-5 + t_C * (-2.39360481e-6 + t_C * 1.27121596e-7))))
+        t * (-8.86534313e-3 + t * (1.03738936e-5 + t * (-2.39360481e-6 + t * 1.27121596e-7))))
   )
 }
 
 /**
- * Density of ice Ih.
+ * Heat capacity of ice Ih at 101 325 Pa.
  *
- * @param t_C  −100 … 0.01 °C
- * @returns    kg/m³, within 0.0016 % from −80 to 0 °C
+ *     c = 2.09699466 + 7.41602152e-3 t + 2.58176795e-6 t²
+ *
+ * @param t_C  −100 … +0.01 °C
+ * @returns    kJ/(kg K), within 0.016 % down to −80 °C
  * @throws     Refusal 'out-of-range'
- * @source     fit made here to IAPWS R10-06(2009)
+ * @source     fitted to IAPWS R10-06(2009) (Feistel and Wagner 2006)
  */
-export function ice_density_kg_m3(t_C: number): number {
-  within('t_C', t_C, coldestIce_C, 0.01, 'ice')
-  return 916.708236 + t_C * (-0.148546644 - t_C * 2.69185e-4)
+export function iceCp_kJ_kgK(t_C: number): number {
+  const t = within_C(t_C, coldestFrozen_C, 0.01, 'ice')
+  return 2.09699466 + t * (7.41602152e-3 + t * 2.58176795e-6)
+}
+
+/** Enthalpy of ice from 0 °C, kJ/kg: the primitive of `iceCp_kJ_kgK`, same range and source. */
+export function iceEnthalpy_kJ_kg(t_C: number): number {
+  return hOfIce(within_C(t_C, coldestFrozen_C, 0.01, 'ice'))
+}
+
+/** `iceEnthalpy_kJ_kg` for callers that hold the range themselves. */
+export function hOfIce(t: number): number {
+  return t * (2.09699466 + t * (3.70801076e-3 + t * 8.6058932e-7))
+}
+
+/** Entropy of ice from 0 °C, kJ/(kg K): ∫ c dT/T in closed form, same range and source. */
+export function iceEntropy_kJ_kgK(t_C: number): number {
+  const t = within_C(t_C, coldestFrozen_C, 0.01, 'ice')
+  const T0 = 273.15
+  const T = t + T0
+  const [a, b, c] = [2.09699466, 7.41602152e-3, 2.58176795e-6]
+  // With t = T − T0: a + b t + c t² = A + B T + c T²
+  const A = a - b * T0 + c * T0 * T0
+  const B = b - 2 * c * T0
+  return A * Math.log(T / T0) + B * (T - T0) + (c / 2) * (T * T - T0 * T0)
+}
+
+/**
+ * Density of ice Ih at 101 325 Pa.
+ *
+ * @param t_C  −80 … +0.01 °C
+ * @returns    kg/m³, within 0.0016 %
+ * @throws     Refusal 'out-of-range'
+ * @source     fitted to IAPWS R10-06(2009)
+ */
+export function iceDensity_kg_m3(t_C: number): number {
+  const t = within_C(t_C, -80, 0.01, 'the density of ice')
+  return 916.708236 + t * (-0.148546644 + t * -2.69185e-4)
+}
+
+/** Nodes and weights of five-point Gauss–Legendre quadrature on −1 … 1. */
+const gauss: readonly (readonly [number, number])[] = [
+  [-0.906179845938664, 0.236926885056189],
+  [-0.538469310105683, 0.478628670499366],
+  [0, 0.568888888888889],
+  [0.538469310105683, 0.478628670499366],
+  [0.906179845938664, 0.236926885056189],
+]
+
+/** ∫ f from a to b by five-point Gauss quadrature on equal parts. */
+export function integral(
+  f: (x: number) => number,
+  from: number,
+  to: number,
+  parts: number,
+): number {
+  const half = (to - from) / parts / 2
+  let sum = 0
+  for (let p = 0; p < parts; p++) {
+    const middle = from + (2 * p + 1) * half
+    for (const [x, w] of gauss) sum += w * f(middle + x * half)
+  }
+  return sum * half
 }
