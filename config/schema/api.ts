@@ -1,6 +1,6 @@
 import type { Harm } from './product.js'
 import type { Placement, ProbeId, StorageUnitId } from './site.js'
-import type { Evidence, Phase, Standing, Verdict } from './verdict.js'
+import type { Evidence, Interval, Phase, Standing, Verdict } from './verdict.js'
 
 /** What the HTTP interface and the live feed carry. Times are UTC ms here: they feed charts. */
 
@@ -31,6 +31,11 @@ export type ItemView = {
   readonly track: readonly (readonly [number, number])[]
   /** The next half hour, margin. */
   readonly forecast: readonly Fan[]
+  /**
+   * Hours until the chance of turning reaches the site's limit and the item is Poised, as forecast:
+   * low, middle, high. Null when it is not Below, or does not reach it within the horizon.
+   */
+  readonly poisedIn_h?: Interval | null
   /** Margins (K, negative) at which the chance of turning within 1 h at the policy quantile is 1, 10, 50 %; null above any. */
   readonly tints_K: readonly [number | null, number | null, number | null]
 }

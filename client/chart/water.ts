@@ -1,0 +1,118 @@
+import { isAsIntended } from '../shown.js'
+import type { Bay, Lane } from './lanes.js'
+import { blindPattern } from './pen.js'
+import { type Board, haloText, type Scene, scale_K, setFont } from './scene.js'
+
+const tints = ['d1', 'd2', 'd3', 'd4'] as const
+
+/** Where a lane's water changes its tint, from the line downwards. */
+const levelsOf = (lane: Lane): readonly number[] => {
+  const [one, ten, fifty] = lane.item.tints_K
+  const at = (k: number | null) => Math.max(scale_K.bottom, k ?? scale_K.bottom)
+  return [0, at(one), at(ten), at(fifty), scale_K.bottom]
+}
+
+const isTinted = (lane: Lane): boolean => lane.mark !== 'silent' && !isAsIntended(lane.item)
+
+/** Air above the line, tints under it as steps: each lane has its own depths. */
+export const drawWater = (board: Board, scene: Scene, bay: Bay): void => {
+  const { ctx } = board
+  const { colours } = scene
+  const line = board.y(0)
+  ctx.fillStyle = colours.air
+  ctx.fillRect(board.x(bay.x), board.top, bay.w, line - board.top)
+  for (const part of bay.parts) {
+    const x = board.x(part.x)
+    if (part.kind === 'lane' && part.mark === 'silent') {
+      ctx.fillStyle = colours.sheet
+      ctx.fillRect(x, board.top, part.w, board.bottom - board.top)
+      ctx.fillStyle = blindPattern(ctx, colours)
+      ctx.fillRect(x, board.top, part.w, board.bottom - board.top)
+      continue
+    }
+    if (part.kind === 'fold' || !isTinted(part)) {
+      ctx.fillStyle = colours.d1
+      ctx.fillRect(x - 0.3, line, part.w + 0.6, board.bottom - line)
+      continue
+    }
+    const levels = levelsOf(part)
+    for (const [i, tint] of tints.entries()) {
+      const from = board.y(levels[i] ?? 0)
+      const to = board.y(levels[i + 1] ?? scale_K.bottom)
+      if (to <= from) continue
+      ctx.fillStyle = colours[tint]
+      ctx.fillRect(x - 0.3, from, part.w + 0.6, to - from)
+    }
+  }
+}
+
+/** The edges of the tints: 1, 10 and 50 %, the middle one heavy; never smoothed between items. */
+export const drawIsobaths = (board: Board, scene: Scene, bay: Bay): void => {
+  const { ctx } = board
+  ctx.strokeStyle = scene.colours.isobath
+  ctx.setLineDash([])
+  for (const which of [0, 1, 2] as const) {
+    ctx.beginPath()
+    let down = false
+    for (const part of bay.parts) {
+      const depth = part.kind === 'lane' && isTinted(part) ? part.item.tints_K[which] : null
+      if (depth === null || depth <= scale_K.bottom) {
+        down = false
+        continue
+      }
+      const y = board.y(depth)
+      if (down) ctx.lineTo(board.x(part.x), y)
+      else ctx.moveTo(board.x(part.x), y)
+      ctx.lineTo(board.x(part.x + part.w), y)
+      down = true
+    }
+    ctx.lineWidth = which === 1 ? 1.8 : 0.9
+    ctx.stroke()
+  }
+}
+
+/** The line: 2 px with its thin echo below. It is the same everywhere. */
+export const drawLine = (board: Board, scene: Scene): void => {
+  const { ctx } = board
+  const { size, colours } = scene
+  const y = board.y(0)
+  ctx.fillStyle = colours.ink
+  ctx.fillRect(board.left - 9 * size, y - size, board.right - board.left + 9 * size, 2 * size)
+  ctx.fillRect(
+    board.left - 9 * size,
+    y + 3.4 * size,
+    board.right - board.left + 9 * size,
+    0.8 * size,
+  )
+}
+
+const isFree = (scene: Scene, lane: Lane): boolean => {
+  const margin = scene.margin(lane.item)
+  return isTinted(lane) && (margin === null || margin > 1.4)
+}
+
+/** What the line and the isobaths are called, once, over calm lanes near the left. */
+export const drawLineLabels = (board: Board, scene: Scene): void => {
+  const { ctx } = board
+  const { colours, size } = scene
+  setFont(board, scene, 12, 650)
+  ctx.textAlign = 'left'
+  ctx.textBaseline = 'alphabetic'
+  const lanes = scene.layout.bays.flatMap((b) => b.parts).filter((p) => p.kind === 'lane')
+  const seen = lanes.filter((l) => board.x(l.x) >= board.left - 1 && board.x(l.x) < board.right)
+  const name = scene.say('waterline.line')
+  const bay = scene.layout.bays.find((b) => board.x(b.x) >= board.left - 1) ?? scene.layout.bays[0]
+  if (bay !== undefined)
+    haloText(ctx, name, board.x(bay.x) + 6, board.y(0) - 8 * size, colours.ink, colours.air)
+  const host = seen.find((l) => isFree(scene, l) && l.item.tints_K[1] !== null)
+  if (host === undefined) return
+  let above = Number.NEGATIVE_INFINITY
+  for (const [i, text] of ['1 %', '10 %', '50 %'].entries()) {
+    const depth = host.item.tints_K[i]
+    if (depth === null || depth === undefined || depth <= scale_K.bottom) continue
+    const y = Math.max(board.y(depth) - 3, above + 12 * size)
+    above = y
+    const tint = colours[tints[i] ?? 'd1']
+    haloText(ctx, text, board.x(host.x) + 4, y, colours.ink, tint, 2.5)
+  }
+}

@@ -1,0 +1,80 @@
+import { useSignal } from '@preact/signals'
+import { api, remedyOf } from '../api.js'
+import { isWall } from '../screen.js'
+import { picture } from '../site.js'
+import { say } from '../words.js'
+
+const speeds = [1, 10, 60, 300] as const
+
+/** How fast the simulated site's clock runs; it reads as changed only once the server has said so. */
+const Speed = ({ speed }: { speed: number }) => {
+  const failed = useSignal<string | null>(null)
+  const set = async (wanted: number): Promise<void> => {
+    failed.value = null
+    try {
+      await api.setSpeed(wanted)
+    } catch (error) {
+      failed.value = remedyOf(error, say('error.unreachable'))
+    }
+  }
+  return (
+    <fieldset class="speed">
+      <legend>{say('practice.speed')}</legend>
+      {speeds.map((s) => (
+        <button key={s} type="button" aria-pressed={speed === s} onClick={() => void set(s)}>
+          {say('practice.times', { speed: String(s) })}
+        </button>
+      ))}
+      {failed.value !== null && <p role="alert">{failed.value}</p>}
+    </fieldset>
+  )
+}
+
+/** One probe that the simulator leaves alone, and the message that moves it. */
+const TryProbe = () => {
+  const probe = picture.value?.site.tryProbe ?? null
+  if (probe === null) return null
+  const url = new URL(probe.mqtt)
+  const port = url.port === '' ? '1883' : url.port
+  const message = JSON.stringify([{ n: probe.name, u: 'Cel', v: -4.2 }])
+  return (
+    <details class="try">
+      <summary>{say('practice.try')}</summary>
+      <div class="tryBox">
+        <p>{say('practice.tryText', { item: probe.item })}</p>
+        <dl>
+          <dt>{say('practice.topic')}</dt>
+          <dd>
+            <code>{probe.topic}</code>
+          </dd>
+          <dt>{say('practice.name')}</dt>
+          <dd>
+            <code>{probe.name}</code>
+          </dd>
+        </dl>
+        {/* biome-ignore lint/a11y/noNoninteractiveTabindex: it scrolls on a narrow screen */}
+        <pre tabIndex={0}>{`mosquitto_pub -h ${url.hostname} -p ${port} -q 1 -t '${probe.topic}' -m '${message}'`}</pre>
+      </div>
+    </details>
+  )
+}
+
+/** The mark that no picture of a simulated site can lose: a frame on all four sides, and the bar. */
+export const PracticeBar = () => {
+  const site = picture.value?.site
+  if (site === undefined || !site.practice) return null
+  return (
+    <section class="practice-bar" aria-label={say('practice.word')}>
+      <b>{say('practice.word')}</b>
+      <span class="what">{say('practice.text')}</span>
+      {!isWall.value && <TryProbe />}
+      {isWall.value ? (
+        <span>{say('practice.times', { speed: String(site.speed) })}</span>
+      ) : (
+        <Speed speed={site.speed} />
+      )}
+    </section>
+  )
+}
+
+export const PracticeFrame = () => <div class="practice-frame" aria-hidden="true" />

@@ -1,0 +1,125 @@
+import { useSignal } from '@preact/signals'
+import { useEffect } from 'preact/hooks'
+import { HandsNeeded } from '../parts/HandsNeeded.js'
+import { Key } from '../parts/Key.js'
+import { Mark } from '../parts/Marks.js'
+import { TwinTable } from '../parts/TwinTable.js'
+import { WaterlineChart } from '../parts/WaterlineChart.js'
+import { asTable, isPhone, isWall, showTable } from '../screen.js'
+import { readout } from '../sentences.js'
+import { type MarkKind, markOf } from '../shown.js'
+import { itemById, now_ms, type Picture, picture } from '../site.js'
+import { say } from '../words.js'
+
+const isTyping = (event: KeyboardEvent): boolean =>
+  event.target instanceof HTMLElement &&
+  (event.target.isContentEditable || /^(INPUT|SELECT|TEXTAREA)$/.test(event.target.tagName))
+
+const Switch = () => (
+  // biome-ignore lint/a11y/useSemanticElements: two buttons, not a form's fields
+  <div class="seg" role="group" aria-label={say('waterline.form')}>
+    <button type="button" aria-pressed={!asTable.value} onClick={() => showTable(false)}>
+      {say('waterline.asChart')}
+    </button>
+    <button type="button" aria-pressed={asTable.value} onClick={() => showTable(true)}>
+      {say('waterline.asTable')} {!isPhone.value && <kbd>T</kbd>}
+    </button>
+  </div>
+)
+
+const worst: readonly MarkKind[] = ['turned', 'poised', 'below', 'near', 'silent']
+
+/** The most pressing mark of a storage unit, for its chip on a phone. */
+const worstOf = (known: Picture, unit: string): MarkKind | undefined => {
+  const kinds = known.items
+    .filter((i) => i.storageUnit === unit)
+    .map((i) => markOf(i, known.site.policy))
+  return worst.find((kind) => kinds.includes(kind))
+}
+
+/** On a phone one bay is shown; the chips name them all, each with its worst mark. */
+const Bays = ({
+  known,
+  chosen,
+  choose,
+}: {
+  known: Picture
+  chosen: string
+  choose: (id: string) => void
+}) => (
+  <nav class="bays" aria-label={say('waterline.bays')}>
+    {known.storageUnits.map((unit) => {
+      const kind = worstOf(known, unit.id)
+      return (
+        <button
+          key={unit.id}
+          type="button"
+          aria-pressed={unit.id === chosen}
+          onClick={() => choose(unit.id)}
+        >
+          {unit.id}
+          {kind !== undefined && <Mark kind={kind} size={18} />}
+          {kind !== undefined && <span class="unseen">, {say(`mark.${kind}`)}</span>}
+        </button>
+      )
+    })}
+  </nav>
+)
+
+const onlyUnit = (known: Picture, unit: string): Picture => ({
+  ...known,
+  storageUnits: known.storageUnits.filter((u) => u.id === unit),
+  items: known.items.filter((i) => i.storageUnit === unit),
+})
+
+/** Every stored item against its own freezing line. */
+export const Waterline = () => {
+  const known = picture.value
+  const near = useSignal<string | null>(null)
+  const chosen = useSignal<string | null>(null)
+  const phone = isPhone.value
+  useEffect(() => {
+    const onKey = (event: KeyboardEvent): void => {
+      if (event.key.toLowerCase() !== 't' || event.ctrlKey || event.metaKey || event.altKey) return
+      if (!isTyping(event)) showTable(!asTable.value)
+    }
+    addEventListener('keydown', onKey)
+    return () => removeEventListener('keydown', onKey)
+  }, [])
+  if (known === null) return null
+  const at = { now_ms: now_ms.value, zone: known.site.zone }
+  const item = near.value === null ? undefined : itemById.value.get(near.value)
+  const hint = asTable.value
+    ? say('waterline.tableHint')
+    : item === undefined
+      ? say('waterline.hint')
+      : readout(item, at)
+  const firstInNeed = known.storageUnits.find((u) => worstOf(known, u.id) === 'turned')?.id
+  const unit = chosen.value ?? firstInNeed ?? known.storageUnits[0]?.id ?? ''
+  return (
+    <div class="waterline-view">
+      <section class="left" aria-label={say('view.waterline')}>
+        <header>
+          <h1>{say('view.waterline')}</h1>
+          {!phone && <p class={`hint ${item === undefined ? 'dim' : ''}`}>{hint}</p>}
+          {!isWall.value && <Switch />}
+        </header>
+        {phone && !asTable.value && (
+          <Bays known={known} chosen={unit} choose={(id) => (chosen.value = id)} />
+        )}
+        <div class="chart">
+          {asTable.value ? (
+            <TwinTable />
+          ) : (
+            <WaterlineChart
+              known={phone ? onlyUnit(known, unit) : known}
+              near={(id) => (near.value = id)}
+            />
+          )}
+        </div>
+        {!asTable.value && <Key />}
+      </section>
+      {!phone && <HandsNeeded />}
+    </div>
+  )
+}
