@@ -1,8 +1,8 @@
 import { airSpeaks, heldTo } from './air.js'
 import { type Drive, H, own, perSlot, Δ } from './estimate.js'
 import { at, correct, type Gauss } from './gauss.js'
-import { enthalpy_kJ_kg, type Matter, temperature_C } from './matter.js'
 import { exposed, hazard_h } from './hazard.js'
+import { enthalpy_kJ_kg, type Matter, temperature_C } from './matter.js'
 import { type Group, type Plan, type PlannedItem, valueAt } from './plan.js'
 import { type Carried, carried, normalised, thinned, turnedWithin } from './rivals.js'
 import { started } from './start.js'
@@ -24,8 +24,7 @@ const fromDepth_K = 0.4
 const fullDepth_K = 1
 
 const unknownCause = (depth_K: number): number =>
-  unknownCause_h *
-  Math.min(1, Math.max(0, (depth_K - fromDepth_K) / (fullDepth_K - fromDepth_K)))
+  unknownCause_h * Math.min(1, Math.max(0, (depth_K - fromDepth_K) / (fullDepth_K - fromDepth_K)))
 
 /** Below this depth no fresh candidate is made: the curves lie within the noise. */
 const leastDepth_K = 0.25
@@ -82,11 +81,7 @@ const rebased = (
   })
 
 /** The same temperatures on the curves of a revised product or container. */
-const rematter = (
-  bank: readonly Branch[],
-  was: Matter,
-  is: Matter,
-): Branch[] =>
+const rematter = (bank: readonly Branch[], was: Matter, is: Matter): Branch[] =>
   bank.map((b) => {
     const g: Gauss = [...b.g]
     const onIce = b.kind === 'ice'
@@ -191,8 +186,7 @@ export function advance(
       mark_Ks: based ? heldTo(unit, start_ms) : 0,
     }
     const parentLocal = item.parent < 0 ? -1 : (group.localItem.get(item.parent) ?? -1)
-    const parent =
-      parentLocal < 0 ? null : advance(plan, group, core, parentLocal, start_ms).track
+    const parent = parentLocal < 0 ? null : advance(plan, group, core, parentLocal, start_ms).track
     track = started(plan, item, track, start_ms, air, parent)
   }
   const end_ms = Math.min(t_ms, item.removed_ms)
@@ -317,7 +311,7 @@ const changed = (
   const bank = now.bank.map((b) => {
     const g: Gauss = [...b.g]
     for (let k = 0; k < n; k++) g[at(n, Δ, k)] = k === Δ ? spread : 0
-    g[Δ] = based ? 0 : (b.g[Δ]! + now.base_C)
+    g[Δ] = based ? 0 : b.g[Δ]! + now.base_C
     return { ...b, g }
   })
   return {

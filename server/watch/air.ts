@@ -1,6 +1,6 @@
-import { runOf, isStuck, looksFahrenheit } from './trust.js'
 import type { PlannedProbe } from './plan.js'
 import type { AirTrack, UnitTrack } from './state.js'
+import { isStuck, looksFahrenheit, runOf } from './trust.js'
 
 /** How fast the air of a store wanders: 1 K in a minute (doors, compressor) [common practice]. */
 const wanderAir_K2_s = 1 / 60
@@ -34,7 +34,13 @@ const freshAir = (probe: PlannedProbe, t_ms: number, y_C: number, raw_C: number)
  * One reading of a probe of the air: its lag undone by a filter of two unknowns, the air (a random
  * walk) and the sensor that follows it.
  */
-const heardAir = (last: AirTrack, probe: PlannedProbe, t_ms: number, y_C: number, raw_C: number): AirTrack => {
+const heardAir = (
+  last: AirTrack,
+  probe: PlannedProbe,
+  t_ms: number,
+  y_C: number,
+  raw_C: number,
+): AirTrack => {
   const dt_s = (t_ms - last.t_ms) / 1000
   const q = probe.placement === 'in-buffer' ? wanderBuffer_K2_s : wanderAir_K2_s
   const f = Math.exp(-dt_s / probe.tau_s)
@@ -96,7 +102,8 @@ export function hearAir(
   const last = unit.probes.find((p) => p.probe === probe.index)
   // A step that only a change of unit explains: heard, not believed.
   if (last !== undefined && looksFahrenheit(y_C, last.trusted_C)) return unit
-  const now = last === undefined ? freshAir(probe, t_ms, y_C, raw_C) : heardAir(last, probe, t_ms, y_C, raw_C)
+  const now =
+    last === undefined ? freshAir(probe, t_ms, y_C, raw_C) : heardAir(last, probe, t_ms, y_C, raw_C)
   const all = [...unit.probes.filter((p) => p.probe !== probe.index), now].sort(
     (a, b) => a.probe - b.probe,
   )
@@ -108,14 +115,13 @@ export function hearAir(
   const variance = used.reduce((sum, p) => sum + p.P[0], 0) / used.length ** 2
   // Between two readings the air is taken to have moved in a straight line.
   const grown =
-    unit.t_ms < 0
-      ? 0
-      : unit.integral_Ks + (((unit.air_C + air_C) / 2) * (t_ms - unit.t_ms)) / 1000
+    unit.t_ms < 0 ? 0 : unit.integral_Ks + (((unit.air_C + air_C) / 2) * (t_ms - unit.t_ms)) / 1000
   return {
     ...unit,
     t_ms,
     source: inAir.length > 0 ? 'air' : 'buffer',
     air_C,
+    mean_C: meanAfter(unit, t_ms, air_C),
     u_K: Math.sqrt(variance),
     integral_Ks: grown,
     probes: all,
@@ -139,11 +145,24 @@ export function hearNeighbour(
     t_ms,
     source: 'neighbour',
     air_C: env_C,
+    mean_C: meanAfter(unit, t_ms, env_C),
     u_K,
     integral_Ks: grown,
     neighbour: item,
     neighbour_ms: t_ms,
   }
+}
+
+/** Time over which the air is averaged for a forecast, s: some turns of a compressor. */
+const mean_s = 900
+/** A change larger than this is a new level, not a cycle, K. */
+const newLevel_K = 3
+
+const meanAfter = (unit: UnitTrack, t_ms: number, air_C: number): number => {
+  if (unit.t_ms < 0 || unit.source === 'none') return air_C
+  const f = Math.exp(-(t_ms - unit.t_ms) / 1000 / mean_s)
+  const mean = f * unit.mean_C + (1 - f) * air_C
+  return Math.abs(mean - air_C) > newLevel_K ? air_C : mean
 }
 
 /** Does a probe of the air, or in a buffer, speak for the storage unit at this instant? */

@@ -93,5 +93,11 @@ const tellNeighbours = (
   if (alone || !ownSpeaks(plan, plan.items[index]!, track, t_ms, 3)) return core
   const { env_C, u_K } = surroundingsOf(plan, group, track, local)
   const told = hearNeighbour(unit, index, t_ms, env_C, u_K)
-  return carryOthers(plan, group, { ...core, units: replaced(core.units, at, told) }, track.unit, t_ms)
+  return carryOthers(
+    plan,
+    group,
+    { ...core, units: replaced(core.units, at, told) },
+    track.unit,
+    t_ms,
+  )
 }

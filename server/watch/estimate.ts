@@ -1,5 +1,5 @@
 import { at, carryCovariance, type Gauss, mostUnknowns } from './gauss.js'
-import { type Matter, heatCapacity_kJ_kgK, temperature_C } from './matter.js'
+import { heatCapacity_kJ_kgK, type Matter, temperature_C } from './matter.js'
 
 /**
  * The unknowns of an item on one branch, in this order:

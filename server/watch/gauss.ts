@@ -82,8 +82,7 @@ export function correct(
   S: number,
 ): void {
   const PH = FP
-  for (let k = 0; k < n; k++)
-    PH[k] = i === j ? g[at(n, k, i)]! : g[at(n, k, i)]! + g[at(n, k, j)]!
+  for (let k = 0; k < n; k++) PH[k] = i === j ? g[at(n, k, i)]! : g[at(n, k, i)]! + g[at(n, k, j)]!
   for (let k = 0; k < n; k++) {
     const gain = PH[k]! / S
     g[k] = g[k]! + gain * innovation
@@ -98,9 +97,7 @@ export function correct(
 
 /** Variance of the sum of two unknowns; with i = j, of one alone. */
 export const varianceOfSum = (g: readonly number[], n: number, i: number, j: number): number =>
-  i === j
-    ? g[at(n, i, i)]!
-    : g[at(n, i, i)]! + g[at(n, j, j)]! + 2 * g[at(n, i, j)]!
+  i === j ? g[at(n, i, i)]! : g[at(n, i, i)]! + g[at(n, j, j)]! + 2 * g[at(n, i, j)]!
 
 /**
  * One Gaussian with the moments of a mixture of two.

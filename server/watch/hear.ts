@@ -1,15 +1,15 @@
 import { advance, unknownsOf } from './advance.js'
 import { biasOf, sensorOf, Δ } from './estimate.js'
 import { at } from './gauss.js'
-import { temperature_C } from './matter.js'
 import { forkOdds, opensFork, returned } from './lookalikes.js'
+import { temperature_C } from './matter.js'
 import { type Group, type Plan, valueAt } from './plan.js'
 import {
   type Carried,
   liquidSeen,
   normalised,
-  seen,
   type Sight,
+  seen,
   sumLogs,
   thinned,
   weigh,
@@ -144,12 +144,9 @@ export function hearOwn(
   const probe = plan.probes[item.slots[k]!.probe]!
   const last = track.slots[k]!
   const resolution = probe.given.resolution_K
-  const noise2 =
-    leastNoise_K ** 2 + (flicker * probe.given.accuracy_K) ** 2 + last.noise_K2 * 0.5
+  const noise2 = leastNoise_K ** 2 + (flicker * probe.given.accuracy_K) ** 2 + last.noise_K2 * 0.5
   const R_K2 =
-    noise2 * last.scale +
-    resolution ** 2 / 12 +
-    (kind === 'sibling' ? siblingNoise_K ** 2 : 0)
+    noise2 * last.scale + resolution ** 2 / 12 + (kind === 'sibling' ? siblingNoise_K ** 2 : 0)
   const sight: Sight = { slot: k, y_C, R_K2, t_ms }
   const all = moved.carried
   const foreseen = expectation(all, n, sight)
@@ -181,8 +178,7 @@ export function hearOwn(
   }
   if (last.apart_ms >= 0 && last.apartWhy === 'left') {
     const back = returned(last, y_C, foreseen)
-    if (back.again)
-      track = withSlot(track, k, { ...last, apart_ms: -1, apartWhy: 'none', back: 0 })
+    if (back.again) track = withSlot(track, k, { ...last, apart_ms: -1, apartWhy: 'none', back: 0 })
     else return withSlot(thinOnly(track, n), k, { ...heard, level_C: y_C, back: back.count })
   }
 
@@ -216,7 +212,11 @@ export function hearOwn(
     }
     fork = odds < -14 ? null : { ...fork, odds, level_C: y_C }
     if (fork !== null && odds > 9)
-      return apart(withSlot(thinOnly(track, n), k, heard), { ...fork, bank: thinned(forkBank, n) }, 'left')
+      return apart(
+        withSlot(thinOnly(track, n), k, heard),
+        { ...fork, bank: thinned(forkBank, n) },
+        'left',
+      )
   } else if (fork !== null) {
     // Another probe of the item saw this: both stories of the forked one hear it.
     const inFork = tell(moved.forked, n, sight, track.base_C, jump)

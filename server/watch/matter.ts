@@ -1,13 +1,8 @@
 import type { Container, Product } from '../../config/schema/product.js'
 import type { Learned } from '../../config/schema/site.js'
-import {
-  coldestFrozen_C,
-  equilibriumEnthalpy_kJ_kg,
-  ice_kg_kg as iceAt_kg_kg,
-  liquidEnthalpy_kJ_kg,
-  stop_C,
-} from '../physics/curves.js'
-import { latentHeat_kJ_kg } from '../physics/fusion.js'
+import { equilibriumFrom, liquidTemperature_C } from '../physics/branches.js'
+import { coldestLiquid_C, warmest_C } from '../physics/constants.js'
+import { endOfFreezing_C, hEquilibrium, hLiquid, iceAt } from '../physics/curves.js'
 import { type Substance, substanceOf } from '../physics/substance.js'
 import { gradientOf } from './gradient.js'
 import { type Kinetics, kineticsOf } from './hazard.js'
@@ -18,6 +13,7 @@ type Table = {
   readonly from_kJ_kg: number
   readonly step_kJ_kg: number
   readonly T_C: Float64Array
+  readonly ice_kg_kg: Float64Array
 }
 
 /**
@@ -46,27 +42,26 @@ export type Matter = {
   readonly noExposure: readonly number[]
 }
 
-/** Liquid is read from here up; below, no liquid water is known and the slope of the end goes on. */
-const liquidFrom_C = -40
-const warmest_C = 60
+/** The tables of the ice branch begin here; colder, the slope of their end goes on. */
+const coldest_C = -120
 /** Cells per branch: about 1 kJ/kg, which reads temperatures within 5 mK. */
 const cells = 640
-/** Steps in temperature from which the even grid in enthalpy is made. */
-const fineSteps = 4000
 
-/** T(h) on an even grid in h from pairs that rise together. */
-const evenly = (h: readonly number[], T: readonly number[]): Table => {
-  const from_kJ_kg = h[0]!
-  const step_kJ_kg = (h.at(-1)! - from_kJ_kg) / cells
-  const out = new Float64Array(cells + 1)
-  let k = 0
+/** Temperature and ice on an even grid in enthalpy. */
+const evenly = (
+  from_kJ_kg: number,
+  to_kJ_kg: number,
+  at: (h: number) => { readonly T_C: number; readonly ice_kg_kg: number },
+): Table => {
+  const step_kJ_kg = (to_kJ_kg - from_kJ_kg) / cells
+  const T_C = new Float64Array(cells + 1)
+  const ice_kg_kg = new Float64Array(cells + 1)
   for (let i = 0; i <= cells; i++) {
-    const want = from_kJ_kg + i * step_kJ_kg
-    while (k < h.length - 2 && h[k + 1]! < want) k++
-    const f = (want - h[k]!) / (h[k + 1]! - h[k]!)
-    out[i] = T[k]! + Math.min(1, Math.max(0, f)) * (T[k + 1]! - T[k]!)
+    const found = at(from_kJ_kg + i * step_kJ_kg)
+    T_C[i] = found.T_C
+    ice_kg_kg[i] = found.ice_kg_kg
   }
-  return { from_kJ_kg, step_kJ_kg, T_C: out }
+  return { from_kJ_kg, step_kJ_kg, T_C, ice_kg_kg }
 }
 
 const read = (table: Table, h: number): number => {
@@ -103,22 +98,19 @@ export function heatCapacity_kJ_kgK(m: Matter, onIce: boolean, h: number): numbe
 /** Enthalpy at a temperature, kJ/kg, wall included: the exact curve, not the table. */
 export function enthalpy_kJ_kg(m: Matter, onIce: boolean, T_C: number): number {
   if (onIce && T_C < m.freezing_C)
-    return (
-      equilibriumEnthalpy_kJ_kg(m.substance, Math.max(coldestFrozen_C, T_C)) + m.wall_kJ_kgK * T_C
-    )
-  const T = Math.min(warmest_C, Math.max(liquidFrom_C, T_C))
-  const h = liquidEnthalpy_kJ_kg(m.substance, T) + m.wall_kJ_kgK * T
+    return hEquilibrium(m.substance, Math.max(-200, T_C)) + m.wall_kJ_kgK * T_C
+  const T = Math.min(warmest_C, Math.max(coldestLiquid_C, T_C))
+  const h = hLiquid(m.substance, T) + m.wall_kJ_kgK * T
   return h + (T_C - T) / slope(m.liquid, h)
 }
 
 /** Ice at an enthalpy on the equilibrium branch, kg per kg of product. */
 export function ice_kg_kg(m: Matter, h: number): number {
   if (h >= m.hFreezing) return 0
-  const T = read(m.ice, h)
-  if (T <= liquidFrom_C) return iceAt_kg_kg(m.substance, T)
-  // From the enthalpy, not from T: on the plateau of water T does not tell.
-  const gap = liquidEnthalpy_kJ_kg(m.substance, T) + m.wall_kJ_kgK * T - h
-  return Math.min(m.substance.water_kg_kg, Math.max(0, gap / latentHeat_kJ_kg(T)))
+  const x = (h - m.ice.from_kJ_kg) / m.ice.step_kJ_kg
+  const k = x <= 0 ? 0 : x >= cells - 1 ? cells - 1 : Math.floor(x)
+  const f = Math.max(0, x - k)
+  return m.ice.ice_kg_kg[k]! + f * (m.ice.ice_kg_kg[k + 1]! - m.ice.ice_kg_kg[k]!)
 }
 
 const area_m2 = (c: Container): number | null => {
@@ -157,7 +149,14 @@ const couplingOf = (c: Container, learned: Learned | null): { UA_W_K: number; re
 /** Least relative uncertainty of a coupling: air moves differently from day to day. */
 const leastRelU = 0.1
 
-const cache = new WeakMap<Product, Map<Container, Map<Learned | null, Matter>>>()
+/** Two items of one product in one container share their tables. */
+type Kept = {
+  readonly container: Container
+  readonly learned: Learned | null
+  readonly frozenBefore: boolean
+  readonly matter: Matter
+}
+const cache = new WeakMap<Product, Kept[]>()
 
 /**
  * A product in its container, its tables made once.
@@ -168,56 +167,41 @@ export function matterOf(
   product: Product,
   container: Container,
   learned: Learned | null,
+  frozenBefore: boolean,
   library: Library,
 ): Matter {
-  const byContainer = cache.get(product) ?? new Map<Container, Map<Learned | null, Matter>>()
-  cache.set(product, byContainer)
-  const byLearned = byContainer.get(container) ?? new Map<Learned | null, Matter>()
-  byContainer.set(container, byLearned)
-  const known = byLearned.get(learned)
-  if (known !== undefined) return known
-  const made = make(product, container, learned, library)
-  byLearned.set(learned, made)
-  return made
+  const kept = cache.get(product) ?? []
+  const known = kept.find(
+    (k) => k.container === container && k.learned === learned && k.frozenBefore === frozenBefore,
+  )
+  if (known !== undefined) return known.matter
+  const matter = make(product, container, learned, frozenBefore, library)
+  cache.set(product, [...kept, { container, learned, frozenBefore, matter }])
+  return matter
 }
 
 const make = (
   product: Product,
   container: Container,
   learned: Learned | null,
+  frozenBefore: boolean,
   library: Library,
 ): Matter => {
   const substance = substanceOf(product, library.solutes)
   const { fill_kg } = container
   const wall_kJ_kgK = container.wall_kJ_K / fill_kg
   const f = substance.freezingPoint_C
-  const liquidT = Array.from(
-    { length: fineSteps + 1 },
-    (_, i) => liquidFrom_C + (i * (warmest_C - liquidFrom_C)) / fineSteps,
-  )
-  const liquid = evenly(
-    liquidT.map((T) => liquidEnthalpy_kJ_kg(substance, T) + wall_kJ_kgK * T),
-    liquidT,
-  )
-  // Finer towards the freezing point, where most of the latent heat is: cubic spacing.
-  const below = Array.from({ length: fineSteps + 1 }, (_, i) => {
-    const x = 1 - i / fineSteps
-    return f - 1e-7 - (f - coldestFrozen_C - 1e-6) * x * x * x
-  })
-  const hE = below.map((T) => equilibriumEnthalpy_kJ_kg(substance, T) + wall_kJ_kgK * T)
-  const hFreezing = liquidEnthalpy_kJ_kg(substance, f) + wall_kJ_kgK * f
-  const rising = [...hE, hFreezing].reduce<{ h: number[]; T: number[] }>(
-    (out, h, i) => {
-      if (out.h.length === 0 || h > out.h.at(-1)! + 1e-9) {
-        out.h.push(h)
-        out.T.push(below[i] ?? f)
-      }
-      return out
-    },
-    { h: [], T: [] },
+  const liquidAt = (T: number) => hLiquid(substance, T) + wall_kJ_kgK * T
+  const hFreezing = liquidAt(Math.max(f, coldestLiquid_C))
+  const liquid = evenly(liquidAt(coldestLiquid_C), liquidAt(warmest_C), (h) => ({
+    T_C: liquidTemperature_C(substance, wall_kJ_kgK, h),
+    ice_kg_kg: 0,
+  }))
+  const ice = evenly(hEquilibrium(substance, coldest_C) + wall_kJ_kgK * coldest_C, hFreezing, (h) =>
+    equilibriumFrom(substance, wall_kJ_kgK, h),
   )
   const { UA_W_K, relU } = couplingOf(container, learned)
-  const kinetics = kineticsOf(product, fill_kg, library)
+  const kinetics = kineticsOf(product, fill_kg, library, frozenBefore)
   return {
     substance,
     freezing_C: f,
@@ -229,9 +213,9 @@ const make = (
     couplingRelU: Math.max(leastRelU, relU),
     UA_W_K,
     gradient: gradientOf(container, UA_W_K, area_m2(container)),
-    solidIce_kg_kg: iceAt_kg_kg(substance, Math.max(-20, stop_C(substance))),
+    solidIce_kg_kg: iceAt(substance, Math.max(-20, endOfFreezing_C(substance))),
     liquid,
-    ice: evenly(rising.h, rising.T),
+    ice,
     kinetics,
     noExposure: kinetics.exponents.map(() => 0),
   }

@@ -1,7 +1,7 @@
 import type { Phase } from '../../config/schema/verdict.js'
+import { reckonedTurn } from './hazard.js'
 import { type Plan, type PlannedItem, valueAt } from './plan.js'
 import { type Estimate, reckoned } from './reckon.js'
-import { reckonedTurn } from './hazard.js'
 import type { ItemTrack } from './state.js'
 
 /** Solid from this share of the ice at −20 °C on, and no longer below that (rulings.md 7). */
@@ -44,12 +44,7 @@ export function phaseOf(
  *
  * @param own  a probe of the item itself was heard
  */
-export function followed(
-  plan: Plan,
-  item: PlannedItem,
-  track: ItemTrack,
-  own: boolean,
-): ItemTrack {
+export function followed(plan: Plan, item: PlannedItem, track: ItemTrack, own: boolean): ItemTrack {
   if (track.t_ms < 0 || track.bank.length === 0) return track
   const matter = item.matter[track.matter]!.value
   const estimate = reckoned(plan, item, track)

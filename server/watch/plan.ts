@@ -9,9 +9,9 @@ import type {
   SiteFile,
   StorageUnit,
 } from '../../config/schema/site.js'
-import type { Priors } from '../physics/nucleation.js'
 import type { SoluteTable } from '../physics/solution.js'
 import { groupsOf } from './groups.js'
+import type { Priors } from './hazard.js'
 import { type Matter, matterOf } from './matter.js'
 
 /** What the program ships as data and the watch needs. */
@@ -86,7 +86,10 @@ export type Group = {
   readonly items: readonly number[]
   readonly probes: readonly number[]
   /** For each probe the items it touches: place in `items`, and slot there; the item's own first. */
-  readonly touching: ReadonlyMap<number, readonly { readonly local: number; readonly slot: number }[]>
+  readonly touching: ReadonlyMap<
+    number,
+    readonly { readonly local: number; readonly slot: number }[]
+  >
   /** Place in `units` of a storage unit, and in `items` of an item. */
   readonly localUnit: ReadonlyMap<number, number>
   readonly localItem: ReadonlyMap<number, number>
@@ -212,6 +215,7 @@ const matterOver = (
         valueAt(product, from_ms),
         valueAt(container, from_ms),
         learned.findLast((l) => Date.parse(l.from) <= from_ms) ?? null,
+        item.previouslyFrozen,
         library,
       ),
     }))
@@ -279,9 +283,7 @@ export function planOf(site: SiteFile, library: Library): Plan {
     groupOfProbe: (id) => {
       const first = probes[probeIndex.get(id) ?? -1]?.assignments[0]
       if (first === undefined) return null
-      return first.item >= 0
-        ? groupOfItemIndex(first.item)
-        : (groupOfUnit.get(first.unit) ?? null)
+      return first.item >= 0 ? groupOfItemIndex(first.item) : (groupOfUnit.get(first.unit) ?? null)
     },
     groupOfItem: (id) => {
       const index = itemIndex.get(id)

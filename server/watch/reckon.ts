@@ -57,7 +57,8 @@ const ofBranch = (
     // What was learned of bias and line together belongs to the line by its share of the variance.
     const uf2 = matter.uFreezing_K ** 2
     const k = item.slots.findIndex((s) => s.kind !== 'sibling')
-    const accuracy_K = k < 0 ? Number.POSITIVE_INFINITY : plan.probes[item.slots[k]!.probe]!.given.accuracy_K
+    const accuracy_K =
+      k < 0 ? Number.POSITIVE_INFINITY : plan.probes[item.slots[k]!.probe]!.given.accuracy_K
     const ub2 = accuracy_K ** 2 / 3
     const heard = k >= 0 && track.slots[k]!.trusted_ms >= b.to_ms && !b.placedAsIce
     if (heard) T_C += (b.g[biasOf(k)]! * uf2) / (uf2 + ub2)
@@ -90,7 +91,11 @@ export function reckoned(plan: Plan, item: PlannedItem, track: ItemTrack): Estim
   let ice = 0
   let env_C = 0
   let top = all[0]!
-  const ones = all.map(({ b, w }) => ({ b, w: w / sum, one: ofBranch(plan, item, track, b, matter) }))
+  const ones = all.map(({ b, w }) => ({
+    b,
+    w: w / sum,
+    one: ofBranch(plan, item, track, b, matter),
+  }))
   for (const { b, w, one } of ones) {
     T_C += w * one.T_C
     env_C += w * one.env_C

@@ -1,13 +1,4 @@
-import {
-  biasOf,
-  type Drive,
-  H,
-  leaning,
-  carry,
-  sensorOf,
-  shareOf,
-  Δ,
-} from './estimate.js'
+import { biasOf, carry, type Drive, H, leaning, sensorOf, shareOf, Δ } from './estimate.js'
 import { at, correct, type Gauss, mix, varianceOfSum } from './gauss.js'
 import { heatCapacity_kJ_kgK, type Matter, temperature_C } from './matter.js'
 import type { Branch } from './state.js'
@@ -191,7 +182,12 @@ const varianceOn = (b: Branch, sight: Sight): number => {
   return sight.R_K2 + (frontShare * b.jump_K * Math.exp(-age_s / front_s)) ** 2
 }
 
-export type Weighed = { readonly z: number; readonly log: number; readonly S: number; readonly innovation: number }
+export type Weighed = {
+  readonly z: number
+  readonly log: number
+  readonly S: number
+  readonly innovation: number
+}
 
 /** How well a branch foresaw a reading. */
 export function weigh(b: Branch, n: number, sight: Sight): Weighed {
@@ -241,8 +237,7 @@ const jumped = (c: Carried, n: number, size_K: number): Gauss => {
 const logPossible = (g: readonly number[], n: number, base_C: number, jump: Jump): number => {
   const sd = Math.sqrt(g[at(n, Δ, Δ)]!)
   const env = base_C + g[Δ]!
-  const inside =
-    normal((jump.warmest_C - env) / sd) - normal((jump.coldest_C - env) / sd)
+  const inside = normal((jump.warmest_C - env) / sd) - normal((jump.coldest_C - env) / sd)
   return Math.log(Math.max(inside, 1e-12))
 }
 

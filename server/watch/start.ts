@@ -1,5 +1,5 @@
 import { own, perSlot } from './estimate.js'
-import { at, independent, type Gauss } from './gauss.js'
+import { at, type Gauss, independent } from './gauss.js'
 import { enthalpy_kJ_kg, heatCapacity_kJ_kgK, temperature_C } from './matter.js'
 import { type Plan, type PlannedItem, type Slot, valueAt } from './plan.js'
 import type { Branch, ItemTrack } from './state.js'
@@ -99,7 +99,12 @@ const bankOf = (plan: Plan, item: PlannedItem, start_ms: number, based: boolean)
 }
 
 /** The start of a lot that was split off: what its parent was known to be, on its own probes. */
-const inherited = (plan: Plan, item: PlannedItem, start_ms: number, parent: ItemTrack): Branch[] => {
+const inherited = (
+  plan: Plan,
+  item: PlannedItem,
+  start_ms: number,
+  parent: ItemTrack,
+): Branch[] => {
   const matter = valueAt(item.matter, start_ms)
   return parent.bank.map((b) => {
     const n = b.g.length === 0 ? 0 : own + perSlot * parent.slots.length

@@ -1,4 +1,4 @@
-import type { Phase, Standing, Evidence } from '../../config/schema/verdict.js'
+import type { Evidence, Phase, Standing } from '../../config/schema/verdict.js'
 import type { Gauss } from './gauss.js'
 import { type Group, type Plan, valueAt } from './plan.js'
 
@@ -110,6 +110,8 @@ export type UnitTrack = {
   readonly source: 'air' | 'buffer' | 'neighbour' | 'none'
   readonly air_C: number
   readonly u_K: number
+  /** Its running mean over the last quarter of an hour or so, °C: compressors cycle. */
+  readonly mean_C: number
   /** Running integral of the air temperature, K s, up to t_ms. */
   readonly integral_Ks: number
   readonly probes: readonly AirTrack[]
@@ -215,6 +217,7 @@ export function freshState(plan: Plan, group: Group): GroupState {
       source: 'none' as const,
       air_C: 0,
       u_K: 0,
+      mean_C: 0,
       integral_Ks: 0,
       probes: [],
       neighbour: -1,

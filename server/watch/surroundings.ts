@@ -1,7 +1,7 @@
 import type { StorageUnitKind } from '../../config/schema/site.js'
-import type { Jump } from './rivals.js'
 import type { PlannedUnit } from './plan.js'
 import { valueAt } from './plan.js'
+import type { Jump } from './rivals.js'
 
 /** How much the surroundings of an item differ from the air that serves it, K (watch.md §3). */
 export const spreadOfPosition_K = { air: 0.9, buffer: 1.2, neighbour: 1.5, none: 8 }

@@ -71,7 +71,11 @@ export function runOf<T extends Run>(
   // The value may sit anywhere in its step of resolution: the mean over that is close to this.
   const p = σ < 1e-6 ? (Math.abs(expected_K) < q ? 1 : 0.05) : Math.max(1e-3, within(expected_K))
   const pSame = Math.min(1, σ < q ? Math.max(p, 0.02) : p)
-  return { same: last.same + 1, sameFrom_ms: last.sameFrom_ms, sameLog: last.sameLog + Math.log(pSame) }
+  return {
+    same: last.same + 1,
+    sameFrom_ms: last.sameFrom_ms,
+    sameLog: last.sameLog + Math.log(pSame),
+  }
 }
 
 export const isStuck = (run: Pick<AirTrack, 'same' | 'sameLog'>): boolean =>
@@ -84,7 +88,6 @@ export function normal(x: number): number {
     0.3989422804014327 *
     Math.exp((-x * x) / 2) *
     t *
-    (0.31938153 +
-      t * (-0.356563782 + t * (1.781477937 + t * (-1.821255978 + t * 1.330274429))))
+    (0.31938153 + t * (-0.356563782 + t * (1.781477937 + t * (-1.821255978 + t * 1.330274429))))
   return x >= 0 ? 1 - tail : tail
 }
