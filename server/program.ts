@@ -17,7 +17,7 @@ import { itemReadings, itemTrail, refusedView } from './api/items.js'
 import { boardOf } from './board.js'
 import { decode } from './decode/decode.js'
 import { mappingProblems, mappingsOf } from './decode/mappings.js'
-import { openDemo } from './demo.js'
+import { bindStore, openDemo } from './demo.js'
 import { liveFeed } from './live/feed.js'
 import { openLog, type SqliteLog } from './log/sqliteLog.js'
 import { openBroker } from './mqtt/broker.js'
@@ -118,7 +118,8 @@ export const startProgram = async (settings: Settings): Promise<Program> => {
     })
     undo.push(() => log.close())
 
-    const demo = onDemo ? await openDemo(log, settings.data) : null
+    await bindStore(log, onDemo ? 'practice' : 'real', settings.data)
+    const demo = onDemo ? await openDemo(log, site, library.solutes, logger) : null
     const clock = siteClock(demo?.clockMap ?? null)
     const brokers = new Map<string, OutsideStatus>()
     const mappings = mappingsOf(site)
@@ -151,7 +152,9 @@ export const startProgram = async (settings: Settings): Promise<Program> => {
         speed: clock.map()?.speed ?? 1,
         practice: onDemo,
         tryProbe:
-          demo === null || mqttAddress === null ? null : { ...demo.tryProbe, mqtt: mqttAddress },
+          demo?.tryProbe == null || mqttAddress === null
+            ? null
+            : { ...demo.tryProbe, mqtt: mqttAddress },
         policy: {
           poisedChance: policy.poisedChance,
           poisedHorizon_h: policy.poisedHorizon_h,
@@ -256,7 +259,6 @@ export const startProgram = async (settings: Settings): Promise<Program> => {
             ? null
             : (speed) => {
                 clock.setSpeed(speed)
-                demo.keepClock(clock.map())
               },
         health: () => {
           const { outage, behind_s } = intake()
@@ -297,7 +299,7 @@ export const startProgram = async (settings: Settings): Promise<Program> => {
     const timer = setInterval(() => watch.tick(clock.now_ms()), tick_ms)
     undo.push(() => clearInterval(timer))
 
-    if (demo !== null && mqttAddress !== null) undo.push(await demo.start(mqttAddress, clock))
+    if (demo !== null && mqttAddress !== null) undo.push(demo.start(mqttAddress, clock))
 
     const { port } = server.address() as AddressInfo
     return { http: `http://${settings.host}:${port}`, mqtt: mqttAddress, stop }

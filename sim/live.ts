@@ -40,16 +40,13 @@ export const playLive = (options: {
   client.on('error', options.onFault)
   const behind_h = (state: SimState) =>
     (options.now_ms() - world.start_ms - state.t_s * 1000) / 3_600_000
-  let state =
+  let state: SimState =
     options.saved !== null && behind_h(options.saved) < mostBehind_h
       ? options.saved
       : freshState(world, seed)
   // A fresh one at a late start has its whole past still before it: nobody waits for that.
   if (behind_h(state) > mostBehind_h)
-    state = {
-      ...freshState(world, seed),
-      t_s: Math.floor((options.now_ms() - world.start_ms) / 1000),
-    }
+    state = freshState(world, seed, Math.floor((options.now_ms() - world.start_ms) / 5000) * 5)
   let stopped = false
   let underWay = 0
   let playing = Promise.resolve()

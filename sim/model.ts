@@ -72,9 +72,13 @@ export const meanTemperature_C = (item: WorldItem, state: ItemState): number =>
 export const meanIce_kg_kg = (item: WorldItem, state: ItemState): number =>
   mean(temperaturesOf(item, state).map((t) => iceOf_kg_kg(item.branches, state.turned_s >= 0, t)))
 
-/** A world at rest at its start: every body at its initial temperature, the air at its set point. */
-export const freshState = (world: World, seed: number): SimState => ({
-  t_s: 0,
+/**
+ * A world at rest: every body at its initial temperature, the air at its set point.
+ *
+ * @param from_s  seconds since the world's start at which it begins
+ */
+export const freshState = (world: World, seed: number, from_s = 0): SimState => ({
+  t_s: from_s,
   random: seedOf(seed, 'run'),
   units: world.units.map((u) => ({ air_C: u.setPoint_C, cooling: false })),
   items: world.items.map((item) => ({
@@ -82,7 +86,7 @@ export const freshState = (world: World, seed: number): SimState => ({
       enthalpy_kJ_kg(item.branches, item.startsFrozen, item.initial_C),
     ),
     wall_C: item.initial_C,
-    turned_s: item.startsFrozen ? 0 : -1,
+    turned_s: item.startsFrozen ? from_s : -1,
     turnedFrom_C: item.initial_C,
     othersTurned: item.startsFrozen ? item.count - 1 : 0,
   })),
@@ -90,7 +94,7 @@ export const freshState = (world: World, seed: number): SimState => ({
     sensor_C:
       p.item >= 0 ? (world.items[p.item]?.initial_C ?? 5) : (world.units[p.unit]?.setPoint_C ?? 5),
     seq: 0,
-    next_s: p.phase_s,
+    next_s: from_s + p.phase_s,
   })),
 })
 
