@@ -163,7 +163,13 @@ export const curvesChart = (canvas: HTMLCanvasElement) => {
   const chart = new Chart<'line', Point[]>(canvas, {
     type: 'line',
     data: { datasets: [] },
-    options: { responsive: false, animation: false, parsing: false, events: [] },
+    options: {
+      responsive: false,
+      maintainAspectRatio: false,
+      animation: false,
+      parsing: false,
+      events: [],
+    },
     plugins: [painter],
   })
   return {

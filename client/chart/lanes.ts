@@ -37,6 +37,8 @@ export type LaneRules = {
   readonly gap: number
   /** Least width of a bay, px: its head must be readable. */
   readonly leastBay: number
+  /** Calm lanes are folded rather than narrower than this, px. */
+  readonly comfortable: number
   /** Every lane this wide, as on a phone; null where the room decides. */
   readonly fixed: number | null
   /** More lanes than these and calm ones fold. */
@@ -93,6 +95,47 @@ const folded = (
 const weights = (parts: readonly Part[]): number =>
   parts.reduce((sum, p) => sum + (p.kind === 'fold' ? foldWeight : weightOf(p.mark)), 0)
 
+type OpenBay = { readonly unit: StorageUnitView; readonly parts: readonly Part[] }
+
+/**
+ * Opens strips again as long as there is comfortable room: first where somebody may have to act,
+ * since there the neighbours matter, then the short ones.
+ *
+ * @param room  in widths of a calm lane
+ */
+const unfolded = (bays: readonly OpenBay[], room: number): readonly OpenBay[] => {
+  const isPressing = (bay: OpenBay) => bay.parts.some((p) => p.kind === 'lane' && !isCalm(p.mark))
+  const strips = bays
+    .flatMap((bay) =>
+      bay.parts.flatMap((part) =>
+        part.kind === 'fold' ? [{ part, pressing: isPressing(bay) }] : [],
+      ),
+    )
+    .sort(
+      (a, b) =>
+        Number(b.pressing) - Number(a.pressing) || a.part.items.length - b.part.items.length,
+    )
+  let free = room - bays.reduce((sum, bay) => sum + weights(bay.parts), 0)
+  const open = new Set<string>()
+  for (const { part } of strips) {
+    const more = part.items.length - foldWeight
+    if (more > free) continue
+    free -= more
+    open.add(part.key)
+  }
+  return bays.map(({ unit, parts }) => ({
+    unit,
+    parts: parts.flatMap((part): Part[] =>
+      part.kind === 'fold' && open.has(part.key)
+        ? part.items.flatMap((item, i): Part[] => {
+            const mark = part.marks[i]
+            return mark === undefined ? [] : [{ kind: 'lane', item, mark }]
+          })
+        : [part],
+    ),
+  }))
+}
+
 /** Width of a calm lane, once the bays too narrow for their heads have taken their least. */
 const unitWidth = (
   bays: readonly { readonly parts: readonly Part[] }[],
@@ -140,10 +183,13 @@ export const layoutLanes = (
   const room = rules.width - rules.gap * Math.max(0, all.length - 1)
   const open = all.map((bay) => ({ unit: bay.unit, parts: bay.lanes as Part[] }))
   const openWeight = open.reduce((sum, b) => sum + weights(b.parts), 0)
-  const crowded = items.length > rules.foldBeyond || openWeight * rules.least > room
+  const crowded = items.length > rules.foldBeyond || openWeight * rules.comfortable > room
   const bays =
     rules.fixed === null && crowded
-      ? all.map((bay) => ({ unit: bay.unit, parts: folded(bay.lanes, rules.opened) }))
+      ? unfolded(
+          all.map((bay) => ({ unit: bay.unit, parts: folded(bay.lanes, rules.opened) })),
+          room / rules.comfortable,
+        )
       : open
   const one = rules.fixed ?? unitWidth(bays, room, rules)
   const widthOf = (part: Part, stretch: number): number =>

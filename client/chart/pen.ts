@@ -176,7 +176,7 @@ export const drawPractice = (
   ctx.font = `700 ${Math.round(px)}px ${colours.font}`
   ctx.textAlign = 'center'
   ctx.textBaseline = 'middle'
-  ctx.globalAlpha = 0.13
+  ctx.globalAlpha = 0.1
   ctx.fillStyle = colours['stripe-a']
   ctx.fillText(word, 0, 0)
   ctx.restore()

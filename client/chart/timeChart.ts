@@ -261,6 +261,7 @@ const timeAxis = (view: TimeView, shown: boolean) => ({
 
 const frozenOptions: ChartOptions<'line'> = {
   responsive: false,
+  maintainAspectRatio: false,
   animation: false,
   parsing: false,
   normalized: true,

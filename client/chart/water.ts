@@ -91,6 +91,21 @@ const isFree = (scene: Scene, lane: Lane): boolean => {
   return isTinted(lane) && (margin === null || margin > 1.4)
 }
 
+/** Left end of the first calm run wide enough for a label that no mark stands in, px. */
+const freeRun = (board: Board, scene: Scene, width: number): number | null => {
+  for (const bay of scene.layout.bays) {
+    let from: number | null = null
+    for (const part of bay.parts) {
+      const margin = part.kind === 'lane' ? scene.margin(part.item) : null
+      const clear =
+        part.kind === 'lane' && margin !== null && margin > 1.2 && board.x(part.x) >= board.left - 1
+      from = clear ? (from ?? board.x(part.x)) : null
+      if (from !== null && board.x(part.x + part.w) - from >= width) return from
+    }
+  }
+  return null
+}
+
 /** What the line and the isobaths are called, once, over calm lanes near the left. */
 export const drawLineLabels = (board: Board, scene: Scene): void => {
   const { ctx } = board
@@ -101,9 +116,8 @@ export const drawLineLabels = (board: Board, scene: Scene): void => {
   const lanes = scene.layout.bays.flatMap((b) => b.parts).filter((p) => p.kind === 'lane')
   const seen = lanes.filter((l) => board.x(l.x) >= board.left - 1 && board.x(l.x) < board.right)
   const name = scene.say('waterline.line')
-  const bay = scene.layout.bays.find((b) => board.x(b.x) >= board.left - 1) ?? scene.layout.bays[0]
-  if (bay !== undefined)
-    haloText(ctx, name, board.x(bay.x) + 6, board.y(0) - 8 * size, colours.ink, colours.air)
+  const at = freeRun(board, scene, ctx.measureText(name).width + 10)
+  if (at !== null) haloText(ctx, name, at + 6, board.y(0) - 8 * size, colours.ink, colours.air)
   const host = seen.find((l) => isFree(scene, l) && l.item.tints_K[1] !== null)
   if (host === undefined) return
   let above = Number.NEGATIVE_INFINITY

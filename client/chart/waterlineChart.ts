@@ -83,6 +83,7 @@ export const waterlineChart = (canvas: HTMLCanvasElement) => {
     data: { datasets: [] },
     options: {
       responsive: false,
+      maintainAspectRatio: false,
       animation: false,
       events: [],
       scales: {

@@ -92,7 +92,6 @@ export const TimeFigure = ({ item, known }: { item: ItemView; known: Picture }) 
   const span = useSignal<Span>(null)
   const drag = useSignal<{ from: number; to: number } | null>(null)
   const table = useSignal(false)
-  const ready = useSignal(0)
   const chart = useRef<{
     timeAt(px: number): number
   } | null>(null)
@@ -152,7 +151,8 @@ export const TimeFigure = ({ item, known }: { item: ItemView; known: Picture }) 
           width.value,
           heights.value,
         )
-        ready.value += 1
+        // For whoever waits for the drawing; not a signal, or drawing would cause drawing.
+        if (box.current !== null) box.current.dataset.drawn = of.verdict.t
       })
       end = () => {
         stop()
@@ -164,7 +164,7 @@ export const TimeFigure = ({ item, known }: { item: ItemView; known: Picture }) 
       over = true
       end()
     }
-  }, [fonts, heights, latest, ready, width])
+  }, [fonts, heights, latest, width])
 
   const place = (event: PointerEvent): number =>
     event.clientX - (temperature.current?.getBoundingClientRect().left ?? 0)
@@ -271,7 +271,6 @@ export const TimeFigure = ({ item, known }: { item: ItemView; known: Picture }) 
           aria-label={described}
           // biome-ignore lint/a11y/noNoninteractiveTabindex: see above
           tabIndex={0}
-          data-drawn={ready.value}
           onKeyDown={onKeyDown}
           onDblClick={() => (span.value = null)}
           onPointerDown={(event) => {

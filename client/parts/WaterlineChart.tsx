@@ -20,6 +20,7 @@ const rulesFor = (
 ): LaneRules => ({
   width: width - scaleWidth(size) - edges.right,
   least: 13 * size,
+  comfortable: 17 * size,
   leastBay: 46 * size,
   gap: size > 1 ? 12 : 8,
   fixed: isPhone.value ? 48 : null,
