@@ -5,6 +5,7 @@ import type { SiteFile } from '../config/schema/site.js'
 import { playLive } from '../sim/live.js'
 import type { SimState } from '../sim/model.js'
 import { scenarioOf } from '../sim/scenarios.js'
+import { shifted } from '../sim/shift.js'
 import { worldOf } from '../sim/world.js'
 import type { SqliteLog } from './log/sqliteLog.js'
 import type { SoluteTable } from './physics/solution.js'
@@ -49,6 +50,8 @@ export const bindStore = async (
 
 /** The demonstration site: its clock, its simulator, and the probe that is left to a visitor. */
 export type DemoSite = {
+  /** The site as it stands in the file, its times moved to the demo's start. */
+  readonly site: SiteFile
   readonly clockMap: ClockMap
   /** Where a visitor may publish; without the address of the broker. */
   readonly tryProbe: Omit<NonNullable<SiteView['tryProbe']>, 'mqtt'> | null
@@ -64,7 +67,7 @@ export type DemoSite = {
  */
 export const openDemo = async (
   log: SqliteLog,
-  site: SiteFile,
+  written: SiteFile,
   solutes: SoluteTable,
   logger: Pick<Logger, 'warn'>,
   wall: () => number = Date.now,
@@ -78,11 +81,13 @@ export const openDemo = async (
   const last = kept === null ? null : (JSON.parse(kept) as { site_ms: number; speed: number })
   const state = log.reader.meta(key.state)
   const clockMap = { wall_ms, site_ms: last?.site_ms ?? start_ms, speed: last?.speed ?? usualSpeed }
+  const site = shifted(written, start_ms - Date.parse(scenario.start))
   const world = { ...worldOf(scenario, site, solutes, scenario.seed), start_ms }
   const probe = site.probes.find((p) => p.id === scenario.tryProbe)
   const to = site.assignments.find((a) => a.probe === probe?.id)?.to
 
   return {
+    site,
     clockMap,
     tryProbe:
       probe?.source?.payload === 'senml' && to !== undefined && 'item' in to

@@ -98,8 +98,7 @@ export const startProgram = async (settings: Settings): Promise<Program> => {
   const say = wordsOf('en')
   const library = readLibrary()
   const onDemo = settings.site === null
-  const site = siteFrom(settings.site ?? join(root, 'config', 'demo', 'site.json'))
-  const plan = planOf(site, library)
+  const written = siteFrom(settings.site ?? join(root, 'config', 'demo', 'site.json'))
   const undo: (() => Promise<void> | void)[] = []
   const stop = async () => {
     for (const step of undo.splice(0).reverse()) await step()
@@ -119,7 +118,9 @@ export const startProgram = async (settings: Settings): Promise<Program> => {
     undo.push(() => log.close())
 
     await bindStore(log, onDemo ? 'practice' : 'real', settings.data)
-    const demo = onDemo ? await openDemo(log, site, library.solutes, logger) : null
+    const demo = onDemo ? await openDemo(log, written, library.solutes, logger) : null
+    const site = demo?.site ?? written
+    const plan = planOf(site, library)
     const clock = siteClock(demo?.clockMap ?? null)
     const brokers = new Map<string, OutsideStatus>()
     const mappings = mappingsOf(site)
