@@ -96,7 +96,7 @@ const onPlateau = (
  * @param wall_kJ_kgK  heat capacity of the wall that takes part, per kg of product; 0 or more
  * @param h_kJ_kg      wall included
  * @returns            temperature and ice; above the freezing point the liquid and no ice. Below
- *                     −100 °C straight on.
+ *                     −200 °C straight on.
  */
 export function equilibriumFrom(s: Substance, wall_kJ_kgK: number, h_kJ_kg: number): OnIce {
   const hAt = (t: number) => hEquilibrium(s, t) + wall_kJ_kgK * t

@@ -26,5 +26,5 @@ export const coldestLiquid_C = -40
  */
 export const warmest_C = 60
 
-/** The coldest frozen product of this model, °C. Colder, its curve goes straight on. */
-export const coldestFrozen_C = -100
+/** The coldest frozen product of this model, °C: a dewar. Colder, its curve goes straight on. */
+export const coldestFrozen_C = -200

@@ -41,7 +41,7 @@ export function mostIce_kg_kg(s: Substance): number {
  * Below the stop, and below −40 °C, it stays as it was there; at a eutectic all of the free water
  * freezes, so that just below it x = w0 − bound.
  *
- * @param t_C  −100 … +60 °C
+ * @param t_C  −200 … +60 °C
  * @returns    kg per kg of product, 0 … w0 − bound; it never falls on cooling
  * @throws     Refusal 'out-of-range'
  */
@@ -60,7 +60,7 @@ export function iceAt(s: Substance, t: number): number {
 /**
  * Osmolality of the liquid: its own above the freezing point, that beside ice below.
  *
- * @param t_C  −100 … +60 °C; below the stop and below −40 °C it stays as it was there
+ * @param t_C  −200 … +60 °C; below the stop and below −40 °C it stays as it was there
  * @returns    osmol per kg of water
  * @throws     Refusal 'out-of-range'
  */
@@ -118,7 +118,7 @@ const frozenRest = (s: Substance): number => {
 /**
  * Enthalpy of the product in equilibrium with ice. Above the freezing point it is the liquid.
  *
- * @param t_C  −100 … +60 °C. Below −40 °C ice only cools: c_i for it, and constants for the rest
+ * @param t_C  −200 … +60 °C. Below −40 °C ice only cools: c_i for it, and constants for the rest
  *             [common practice; within 10 %]. On a plateau (pure water, a eutectic) it is the
  *             warm, less frozen end.
  * @returns    kJ/kg
@@ -146,7 +146,7 @@ export function hEquilibrium(s: Substance, t: number): number {
  *
  *     c = w0 c_l + (1 − w0) c_s − x ΔH_f′ − ΔH_f dx/dT
  *
- * @param t_C  −100 … +60 °C; at a freezing point it is the liquid's
+ * @param t_C  −200 … +60 °C; at a freezing point it is the liquid's
  * @returns    kJ/(kg K)
  * @throws     Refusal 'out-of-range'
  */

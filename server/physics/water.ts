@@ -83,8 +83,8 @@ export function liquidDensity_kg_m3(t_C: number): number {
  *
  *     c = 2.09699466 + 7.41602152e-3 t + 2.58176795e-6 t²
  *
- * @param t_C  −100 … +0.01 °C
- * @returns    kJ/(kg K), within 0.016 % down to −80 °C
+ * @param t_C  −200 … +0.01 °C
+ * @returns    kJ/(kg K), within 0.016 % down to −80 °C and 6 % down to −196 °C
  * @throws     Refusal 'out-of-range'
  * @source     fitted to IAPWS R10-06(2009) (Feistel and Wagner 2006)
  */

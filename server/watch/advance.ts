@@ -1,8 +1,8 @@
 import { airSpeaks, heldTo } from './air.js'
-import { type Drive, H, own, perSlot, Δ } from './estimate.js'
+import { type Drive, H, own, perSlot, Δ, Λ } from './estimate.js'
 import { at, correct, type Gauss } from './gauss.js'
-import { exposed, hazard_h } from './hazard.js'
-import { enthalpy_kJ_kg, type Matter, temperature_C } from './matter.js'
+import { aliveAfter, exposed } from './hazard.js'
+import { enthalpy_kJ_kg, heatCapacity_kJ_kgK, type Matter, temperature_C } from './matter.js'
 import { type Group, type Plan, type PlannedItem, valueAt } from './plan.js'
 import { type Carried, carried, normalised, thinned, turnedWithin } from './rivals.js'
 import { started } from './start.js'
@@ -26,6 +26,8 @@ const fullDepth_K = 1
 const unknownCause = (depth_K: number): number =>
   unknownCause_h * Math.min(1, Math.max(0, (depth_K - fromDepth_K) / (fullDepth_K - fromDepth_K)))
 
+/** Uncertainty of an ordinary probe: only what goes beyond it counts towards a possible depth, K. */
+const ordinary_u_K = 0.15
 /** Below this depth no fresh candidate is made: the curves lie within the noise. */
 const leastDepth_K = 0.25
 /** A switching weight is never lighter than this per step: a real jump must be able to win. */
@@ -130,7 +132,8 @@ const withBirths = (
   n: number,
   matter: Matter,
   drive: Drive,
-  exposure: readonly number[],
+  /** Chance by the kinetics alone that it turned within the stretch. */
+  byKinetics: number,
   watched: boolean,
   from_ms: number,
   to_ms: number,
@@ -139,9 +142,13 @@ const withBirths = (
     if (c.branch.kind === 'ice') return [c]
     const T = temperature_C(matter, false, c.branch.g[H]!)
     const depth_K = matter.freezing_C - T
-    if (depth_K < leastDepth_K || drive.dt_s <= 0) return [c]
-    const rate_h = hazard_h(matter, exposure, depth_K) + (watched ? unknownCause(depth_K) : 0)
-    const chance = -Math.expm1((-rate_h * drive.dt_s) / 3600)
+    // How deep it may be: the line itself, and the bias of the probe, are only known so well.
+    const c_kJ = heatCapacity_kJ_kgK(matter, false, c.branch.g[H]!)
+    const u_K = Math.hypot(matter.uFreezing_K, Math.sqrt(c.branch.g[at(n, H, H)]!) / c_kJ)
+    const perhaps_K = depth_K + Math.max(0, u_K - ordinary_u_K)
+    if (perhaps_K < leastDepth_K || drive.dt_s <= 0) return [c]
+    const cause_h = watched ? unknownCause(perhaps_K) : 0
+    const chance = 1 - (1 - byKinetics) * Math.exp((-cause_h * drive.dt_s) / 3600)
     const share = Math.min(0.999999, Math.max(leastShare, chance))
     // A light rival gives birth to nothing that could ever count.
     if (c.branch.w + Math.log(share) < -32) return [c]
@@ -230,13 +237,18 @@ export function advance(
     }
     const watched = ownSpeaks(plan, item, track, next, 60)
     const depth0 = depthOf(track.bank, matter)
+    const T1 = liquidAhead_C(track.bank, matter, drive)
+    const depth1 = T1 === null ? 0 : Math.max(0, matter.freezing_C - T1)
+    const exposure = exposed(matter, track.exposure, depth0, depth1, dt_s)
+    const alive = exposure === track.exposure ? track.alive : aliveAfter(matter, exposure)
+    const byKinetics = track.alive > 0 ? Math.max(0, 1 - alive / track.alive) : 0
     const stretch = (bank: readonly Branch[]) =>
       withBirths(
         carried(bank, n, matter, drive),
         n,
         matter,
         drive,
-        track.exposure,
+        byKinetics,
         watched,
         track.t_ms,
         next,
@@ -251,7 +263,8 @@ export function advance(
       mark_Ks: integral,
       bank,
       fork: track.fork === null ? null : { ...track.fork, bank: forked.map((c) => c.branch) },
-      exposure: exposed(matter, track.exposure, depth0, depthOf(bank, matter), dt_s),
+      exposure,
+      alive,
     }
     if (next < end_ms || changesAt(item, next)) {
       track = thin(changed(item, track, next, unitOf, n), n)
@@ -268,6 +281,20 @@ export const thin = (track: ItemTrack, n: number): ItemTrack => ({
   bank: thinned(track.bank, n),
   fork: track.fork === null ? null : { ...track.fork, bank: thinned(track.fork.bank, n) },
 })
+
+/** Where the heaviest liquid branch will stand after a stretch: enough for an exposure. */
+const liquidAhead_C = (bank: readonly Branch[], matter: Matter, drive: Drive): number | null => {
+  const top = bank.reduce<Branch | null>(
+    (a, b) => (b.kind === 'ice' ? a : a === null || b.w > a.w ? b : a),
+    null,
+  )
+  if (top === null) return null
+  const T = temperature_C(matter, false, top.g[H]!)
+  const k =
+    (matter.coupling_kW_kgK * Math.exp(top.g[Λ]!)) / heatCapacity_kJ_kgK(matter, false, top.g[H]!)
+  const env = drive.baseMean_C + top.g[Δ]!
+  return env + (T - env) * Math.exp(-k * drive.dt_s)
+}
 
 const depthOf = (bank: readonly Branch[], matter: Matter): number => {
   const T = liquidMean_C(bank, matter)

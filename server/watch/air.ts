@@ -1,6 +1,6 @@
 import type { PlannedProbe } from './plan.js'
 import type { AirTrack, UnitTrack } from './state.js'
-import { isStuck, looksFahrenheit, runOf } from './trust.js'
+import { isStuck, looksFahrenheit, noiseAfter, runOf } from './trust.js'
 
 /** How fast the air of a store wanders: 1 K in a minute (doors, compressor) [common practice]. */
 const wanderAir_K2_s = 1 / 60
@@ -22,6 +22,7 @@ const freshAir = (probe: PlannedProbe, t_ms: number, y_C: number, raw_C: number)
     trusted_ms: t_ms,
     trusted_C: y_C,
     raw_C,
+    before_C: null,
     same: 1,
     sameFrom_ms: t_ms,
     sameLog: 0,
@@ -55,12 +56,7 @@ const heardAir = (
   const ν = y_C - expected
   const [ka, ks] = [p12 / S, p22 / S]
   const run = runOf(last, raw_C, t_ms, expected - last.sensor_C, probe.given.resolution_K)
-  const step = (raw_C - last.raw_C) ** 2 / 2
-  // The noise learns from half the squared steps, large ones cut: a door is not noise.
-  const noise_K2 =
-    run.same > 1 && run.same > 4
-      ? last.noise_K2
-      : last.noise_K2 + 0.05 * (Math.min(step, 9 * Math.max(last.noise_K2, 0.01)) - last.noise_K2)
+  const noise_K2 = noiseAfter(last, raw_C, run.same, probe.given.resolution_K)
   const stuck = isStuck(run)
   return {
     ...last,
@@ -71,6 +67,7 @@ const heardAir = (
     trusted_ms: stuck ? last.sameFrom_ms : t_ms,
     trusted_C: y_C,
     raw_C,
+    before_C: last.raw_C,
     ...run,
     noise_K2,
     stuck,

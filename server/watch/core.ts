@@ -28,7 +28,13 @@ const carryOthers = (plan: Plan, group: Group, core: Core, unit: number, t_ms: n
     const moved = advance(plan, group, core, local, t_ms).track
     if (moved === track) continue
     items ??= [...core.items]
-    items[local] = followed(plan, item, thin(moved, unknownsOf(item)), false)
+    items[local] = followed(
+      plan,
+      item,
+      thin(moved, unknownsOf(item)),
+      false,
+      core.units[group.localUnit.get(moved.unit)!]!,
+    )
   }
   return items === null ? core : { ...core, items }
 }
@@ -65,7 +71,14 @@ export function heardInOrder(plan: Plan, group: Group, core: Core, entry: Heard)
       if (turnedProbability(witness) > witnessStillLiquid) continue
     }
     const track = hearOwn(plan, group, now, local, slot, t_ms, y_C, raw_C)
-    now = { ...now, items: replaced(now.items, local, followed(plan, item, track, true)) }
+    now = {
+      ...now,
+      items: replaced(
+        now.items,
+        local,
+        followed(plan, item, track, true, now.units[group.localUnit.get(track.unit)!]!),
+      ),
+    }
   }
   return tellNeighbours(plan, group, now, to.item, t_ms)
 }

@@ -108,7 +108,9 @@ export function carry(g: Gauss, n: number, matter: Matter, onIce: boolean, drive
   F[H * n + Λ] = toΛ
   F[Δ * n + Δ] = drive.keep
   F[Λ * n + Λ] = 1
-  const change = c1 * wander_K2_s * dt_s * c1
+  // As heat, not as temperature: on a plateau a hundredth of a kelvin would be all of the ice.
+  const cl = heatCapacity_kJ_kgK(matter, false, h)
+  const change = cl * cl * wander_K2_s * dt_s
   const flux = couplingNoise * (h - h0)
   q[H] = change + flux * flux
   q[Δ] = drive.deltaQ_K2

@@ -61,7 +61,9 @@ export function evidenceOf(
   const at = group.localUnit.get(placeAt(item, now_ms))
   const unit = at === undefined ? undefined : core.units[at]
   for (const p of unit?.probes ?? []) {
-    if (p.stuck || !isFresh(p.probe, p.trusted_ms)) continue
+    // A control probe belongs to the machine that is being watched: it is no independent witness.
+    const isControl = plan.probes[p.probe]!.given.role === 'control'
+    if (isControl || p.stuck || !isFresh(p.probe, p.trusted_ms)) continue
     const evidence: Evidence =
       plan.probes[p.probe]!.placement === 'in-air' ? 'inferred from air' : 'inferred from buffer'
     found.push({ probe: p.probe, evidence, t_ms: p.trusted_ms, C: p.trusted_C })

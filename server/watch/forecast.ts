@@ -1,9 +1,8 @@
 import { H } from './estimate.js'
 import { type Ahead, exposed } from './hazard.js'
 import { heatCapacity_kJ_kgK, type Matter, temperature_C } from './matter.js'
-import type { Group } from './plan.js'
 import type { Estimate } from './reckon.js'
-import type { Core, ItemTrack, UnitTrack } from './state.js'
+import type { ItemTrack, UnitTrack } from './state.js'
 
 /** Where an item is heading while liquid: first order towards its surroundings. */
 export type Heading = {
@@ -21,8 +20,7 @@ const leastEnv_u_K = 0.4
 
 /** The heading of the liquid story of an item; its surroundings averaged over the compressor. */
 export function headingOf(
-  group: Group,
-  core: Core,
+  unit: UnitTrack | undefined,
   track: ItemTrack,
   matter: Matter,
   estimate: Estimate,
@@ -33,9 +31,12 @@ export function headingOf(
   )
   const h = liquid?.g[H] ?? matter.hFreezing
   const T_C = liquid === null ? estimate.T_C : temperature_C(matter, false, h)
-  const unit: UnitTrack | undefined = core.units[group.localUnit.get(track.unit) ?? -1]
   const calm = track.based && unit !== undefined ? unit.mean_C - track.base_C : 0
-  const env_C = liquid === null ? estimate.env_C : track.base_C + liquid.g[1]! + calm
+  // Measured air is averaged over its compressor; surroundings felt only through the item, over more.
+  const env_C =
+    liquid === null || (!track.based && track.env_ms >= 0)
+      ? track.env_C
+      : track.base_C + liquid.g[1]! + calm
   const λ = liquid?.g[2] ?? 0
   return {
     T_C: estimate.icy < 0.5 ? (estimate.liquid_C ?? T_C) : T_C,

@@ -1,9 +1,6 @@
 import type { Product } from '../../config/schema/product.js'
-import { ownSpeaks } from './advance.js'
 import type { Matter } from './matter.js'
-import type { Library, Plan, PlannedItem } from './plan.js'
-import type { Estimate } from './reckon.js'
-import type { Called, ItemTrack } from './state.js'
+import type { Library } from './plan.js'
 
 /**
  * What is believed about the nucleation of a product in its container before any event: a grid over
@@ -108,26 +105,19 @@ export function exposed(
   })
 }
 
-/**
- * Chance per hour that one container turns now: the mean over what is believed, given that it has
- * stayed liquid through its exposure.
- */
-export function hazard_h(m: Matter, exposure: readonly number[], depth_K: number): number {
-  if (depth_K <= 0) return 0
+/** Chance that one container stays liquid through an exposure, over all that is believed. */
+export function aliveAfter(m: Matter, exposure: readonly number[]): number {
   const { rates_s, weights, exponents, nu } = m.kinetics
-  let top = 0
-  let all = 0
+  let alive = 0
   for (let j = 0; j < exponents.length; j++) {
     const E = exposure[j] ?? 0
-    const power = (depth_K / 10) ** exponents[j]!
     for (let i = 0; i < rates_s.length; i++) {
-      const frail = 1 + (rates_s[i]! * E) / nu
-      const w = E > 0 ? weights[i]! * frail ** -nu : weights[i]!
-      all += w
-      top += (w * rates_s[i]! * power) / frail
+      const x = rates_s[i]! * E
+      // Most of the grid is either untouched or long gone.
+      alive += weights[i]! * (x < 1e-12 ? 1 : (1 + x / nu) ** -nu)
     }
   }
-  return all > 0 ? (3600 * top) / all : 3600 * rates_s[0]! * (depth_K / 10) ** exponents[0]!
+  return alive / exponents.length
 }
 
 /** One exposure ahead, E_b for each exponent, and how likely that path is. */
@@ -179,32 +169,4 @@ const quantile = (sorted: readonly (readonly [number, number])[], want: number):
     before += w
   }
   return sorted.at(-1)?.[0] ?? 0
-}
-
-/** No liquid water is colder (homogeneous nucleation), °C. */
-const surelyIce_C = -38
-const sure = 0.95
-
-/**
- * A turn that nobody saw and that depth and time make sure of: the low quantile of the chance on
- * the exposure alone, or colder than any liquid water (rulings.md 3).
- */
-export function reckonedTurn(
-  plan: Plan,
-  item: PlannedItem,
-  track: ItemTrack,
-  estimate: Estimate,
-): Called | null {
-  if (ownSpeaks(plan, item, track, track.t_ms, 60)) return null
-  const m = item.matter[track.matter]!.value
-  const placed = track.bank.reduce((s, b) => s + (b.placedAsIce ? Math.exp(b.w) : 0), 0)
-  const call = (placedAsIce: boolean): Called => ({
-    at_ms: track.t_ms,
-    reckoned: true,
-    placedAsIce,
-  })
-  if (placed >= sure) return call(true)
-  if (estimate.T_C < surelyIce_C - estimate.u_K) return call(false)
-  const [low] = chanceOver(m, m.noExposure, [{ exposure: track.exposure, weight: 1 }], 1)
-  return low >= sure ? call(false) : null
 }

@@ -16,7 +16,7 @@ import {
 } from './rivals.js'
 import type { Branch, Core, Fork, ItemTrack, SlotTrack } from './state.js'
 import { jumpOf } from './surroundings.js'
-import { isStuck, looksFahrenheit, runOf } from './trust.js'
+import { isStuck, looksFahrenheit, noiseAfter, runOf } from './trust.js'
 
 /** Noise of a good probe beyond its resolution, and the part of its accuracy that flickers, K. */
 const leastNoise_K = 0.03
@@ -152,13 +152,16 @@ export function hearOwn(
   const foreseen = expectation(all, n, sight)
   const stepExpected = last.raw_C === null ? 0 : foreseen.expected_C - (last.trusted_C ?? y_C)
   const run = runOf(last, raw_C, t_ms, stepExpected, resolution)
-  const curb = (raw_C - (last.raw_C ?? raw_C) - (last.raw_C === null ? 0 : stepExpected)) ** 2 / 2
-  const noise_K2 =
-    run.same > 4 || last.count === 0
-      ? last.noise_K2
-      : last.noise_K2 +
-        0.05 * (Math.min(curb, 9 * Math.max(last.noise_K2, leastNoise_K ** 2)) - last.noise_K2)
-  const heard: SlotTrack = { ...last, ...run, t_ms, raw_C, noise_K2, count: last.count + 1 }
+  const noise_K2 = noiseAfter(last, raw_C, run.same, resolution)
+  const heard: SlotTrack = {
+    ...last,
+    ...run,
+    t_ms,
+    raw_C,
+    before_C: last.raw_C,
+    noise_K2,
+    count: last.count + 1,
+  }
 
   if (last.apartWhy === 'stuck' && run.same > 1) return withSlot(thinOnly(track, n), k, heard)
   if (isStuck(heard) && last.apart_ms < 0) {

@@ -9,9 +9,10 @@ import type {
 import { modelVersion } from '../../config/schema/verdict.js'
 import { advance, thin, unknownsOf } from './advance.js'
 import { cautionsFor, tagsOf } from './cautions.js'
+import { type Chances, chancesOn, isPoised } from './chance.js'
 import { evidenceOf, placeAt, type Witnessed } from './evidence.js'
 import { whyOf } from './explain.js'
-import { crossing_h, exposureAhead, type Heading, headingOf } from './forecast.js'
+import { crossing_h, type Heading, headingOf } from './forecast.js'
 import { chanceOver } from './hazard.js'
 import { turnedProbability } from './hear.js'
 import { ifItFreezes } from './ifItFreezes.js'
@@ -67,18 +68,11 @@ export function viewOf(
     estimate,
     evidence,
     best: evidence[0]?.evidence ?? 'not assessable',
-    heading: headingOf(group, core, track, matter, estimate),
+    heading: headingOf(core.units[group.localUnit.get(track.unit)!], track, matter, estimate),
     now_ms,
     witnessTurned: witness !== null && witness.called !== null,
     p: turnedProbability(track),
   }
-}
-
-type Chances = {
-  readonly one: Interval
-  readonly any: Interval
-  readonly any_1h: Interval
-  readonly horizon_h: number
 }
 
 const isMeasured = (e: Evidence): boolean => e.startsWith('measured')
@@ -88,15 +82,7 @@ const chancesOf = (plan: Plan, v: View): Chances | null => {
   const policy = valueAt(plan.policy, v.now_ms)
   if (v.track.called !== null || v.best === 'not assessable') return null
   if (v.estimate.below <= 1 - policy.belowConfidence) return null
-  const ahead = exposureAhead(v.matter, v.heading, policy.poisedHorizon_h)
-  const survived = isMeasured(v.best) ? v.track.exposure : v.matter.noExposure
-  const { count } = v.item.item
-  return {
-    one: chanceOver(v.matter, survived, ahead.horizon, 1),
-    any: chanceOver(v.matter, survived, ahead.horizon, count),
-    any_1h: chanceOver(v.matter, survived, ahead.hour, count),
-    horizon_h: policy.poisedHorizon_h,
-  }
+  return chancesOn(v.item, v.track, v.matter, v.heading, policy, isMeasured(v.best))
 }
 
 /** The one word: the first that applies (watch.md §5). */
@@ -106,8 +92,8 @@ const standingOf = (plan: Plan, v: View, chances: Chances | null): Standing => {
   if (v.best === 'not assessable' || v.estimate.u_K > policy.usefulU_K) return 'Silent'
   const { below } = v.estimate
   if (below >= policy.belowConfidence) {
-    const any = chances?.any[policy.chanceQuantile === 'high' ? 2 : 1] ?? 0
-    return any >= policy.poisedChance || v.witnessTurned ? 'Poised' : 'Below'
+    const poised = chances !== null && isPoised(chances, policy, v.track.poised)
+    return poised || v.witnessTurned ? 'Poised' : 'Below'
   }
   return below <= 1 - policy.belowConfidence ? 'Above' : 'Near'
 }

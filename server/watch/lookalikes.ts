@@ -53,8 +53,8 @@ export function opensFork(
 /** A probe elsewhere: mostly as steady as a probe can be, now and then it wanders. */
 const wanderLog = (step_K: number, R_K2: number): number =>
   Math.log(
-    0.75 * Math.exp(logDensity(step_K ** 2 / (2 * R_K2 + 0.002), 2 * R_K2 + 0.002)) +
-      0.25 * Math.exp(logDensity(step_K ** 2 / 0.5, 0.5)),
+    0.6 * Math.exp(logDensity(step_K ** 2 / (2 * R_K2 + 0.01), 2 * R_K2 + 0.01)) +
+      0.4 * Math.exp(logDensity(step_K ** 2 / 0.5, 0.5)),
   )
 
 /** Chance per reading that a probe that left is back at its item. */

@@ -1,8 +1,13 @@
+import type { Policy } from '../../config/schema/site.js'
 import type { Phase } from '../../config/schema/verdict.js'
-import { reckonedTurn } from './hazard.js'
+import { ownSpeaks } from './advance.js'
+import { chancesOn, isPoised } from './chance.js'
+import { headingOf } from './forecast.js'
+import type { Matter } from './matter.js'
 import { type Plan, type PlannedItem, valueAt } from './plan.js'
 import { type Estimate, reckoned } from './reckon.js'
-import type { ItemTrack } from './state.js'
+import { reckonedTurn } from './reckonedTurn.js'
+import type { ItemTrack, UnitTrack } from './state.js'
 
 /** Solid from this share of the ice at −20 °C on, and no longer below that (rulings.md 7). */
 const solidFrom = 0.9
@@ -38,13 +43,66 @@ export function phaseOf(
   return last === 'frozen' ? 'thawing' : 'freezing'
 }
 
+/** Time over which an item's surroundings are averaged for its forecast, s. */
+const mean_s = 1200
+/** A change larger than this is a new level, K. */
+const newLevel_K = 3
+
+const surroundingsAfter = (
+  track: ItemTrack,
+  estimate: Estimate,
+): { env_C: number; env_ms: number } => {
+  const now = estimate.env_C
+  if (track.env_ms < 0) return { env_C: now, env_ms: track.t_ms }
+  const f = Math.exp(-(track.t_ms - track.env_ms) / 1000 / mean_s)
+  const mean = f * track.env_C + (1 - f) * now
+  return { env_C: Math.abs(mean - now) > newLevel_K ? now : mean, env_ms: track.t_ms }
+}
+
+/** How often the chance is reckoned on the track, ms of data time: it costs more than the rest. */
+const reckonEvery_ms = 60_000
+
+const poisedAfter = (
+  item: PlannedItem,
+  track: ItemTrack,
+  matter: Matter,
+  estimate: Estimate,
+  policy: Policy,
+  measured: boolean,
+  unit: UnitTrack,
+): { poised: boolean; poised_ms: number } => {
+  if (track.called !== null || estimate.below < policy.belowConfidence)
+    return { poised: false, poised_ms: track.t_ms }
+  const { poised, poised_ms } = track
+  if (track.t_ms - poised_ms < reckonEvery_ms) return { poised, poised_ms }
+  const heading = headingOf(unit, track, matter, estimate)
+  const chances = chancesOn(item, track, matter, heading, policy, measured)
+  return { poised: isPoised(chances, policy, poised), poised_ms: track.t_ms }
+}
+
+/** Does a monitoring probe of the air, or in a buffer, speak for a storage unit? */
+const monitored = (plan: Plan, unit: UnitTrack, t_ms: number): boolean =>
+  unit.probes.some(
+    (p) =>
+      !p.stuck &&
+      plan.probes[p.probe]!.given.role !== 'control' &&
+      t_ms - p.trusted_ms < 5 * plan.probes[p.probe]!.interval_ms,
+  )
+
 /**
  * What follows a step on the track of the readings: the phase, the ice noted for the next half hour,
  * and a turn that depth and time alone make sure of (rulings.md 3).
  *
- * @param own  a probe of the item itself was heard
+ * @param own   a probe of the item itself was heard
+ * @param unit  where it stands
  */
-export function followed(plan: Plan, item: PlannedItem, track: ItemTrack, own: boolean): ItemTrack {
+export function followed(
+  plan: Plan,
+  item: PlannedItem,
+  track: ItemTrack,
+  own: boolean,
+  unit: UnitTrack,
+): ItemTrack {
   if (track.t_ms < 0 || track.bank.length === 0) return track
   const matter = item.matter[track.matter]!.value
   const estimate = reckoned(plan, item, track)
@@ -57,8 +115,15 @@ export function followed(plan: Plan, item: PlannedItem, track: ItemTrack, own: b
           [track.t_ms, estimate.ice_kg_kg] as const,
         ]
       : track.ice
-  const next = { ...track, ice: noted }
-  const called = track.called ?? (own ? null : reckonedTurn(plan, item, track, estimate))
+  const measured = own || ownSpeaks(plan, item, track, track.t_ms, 5)
+  const settled = { ...track, ice: noted, ...surroundingsAfter(track, estimate) }
+  const next = {
+    ...settled,
+    ...poisedAfter(item, settled, matter, estimate, policy, measured, unit),
+  }
+  const called =
+    track.called ??
+    (own ? null : reckonedTurn(plan, item, track, estimate, monitored(plan, unit, track.t_ms)))
   return {
     ...next,
     called,

@@ -174,12 +174,15 @@ export type Sight = {
 /** Ice spreads: for a minute or two what the probe touches lags behind (thick or solid foods). */
 const front_s = 100
 const frontShare = 0.25
+/** Ice is nowhere as even as a model of it, K [common practice]. */
+const slush_K = 0.08
 
 /** Variance of the reading as this branch sees it: more in the first moments of ice. */
 const varianceOn = (b: Branch, sight: Sight): number => {
   if (b.kind !== 'ice' || b.placedAsIce) return sight.R_K2
   const age_s = Math.max(0, (sight.t_ms - b.to_ms) / 1000)
-  return sight.R_K2 + (frontShare * b.jump_K * Math.exp(-age_s / front_s)) ** 2
+  const front_K = frontShare * b.jump_K * Math.exp(-age_s / front_s)
+  return sight.R_K2 + front_K * front_K + slush_K * slush_K
 }
 
 export type Weighed = {

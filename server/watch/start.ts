@@ -6,7 +6,7 @@ import type { Branch, ItemTrack } from './state.js'
 import { spreadOfPosition_K } from './surroundings.js'
 
 /** Chance that stock which is not meant to be frozen was placed as ice while colder than its line. */
-const placedAsIce = 0.02
+const placedAsIce = { freezing: 0.002, other: 0.01 }
 /** Stock meant to be frozen and placed as cold as that. */
 const meantAsIce = 0.999
 
@@ -94,7 +94,9 @@ const bankOf = (plan: Plan, item: PlannedItem, start_ms: number, based: boolean)
       : 0.5
     : item.item.previouslyFrozen
       ? 0.2
-      : placedAsIce
+      : product.harm === 'freezing'
+        ? placedAsIce.freezing
+        : placedAsIce.other
   return [branch('liquid', 1 - ice), branch('ice', ice)]
 }
 
@@ -154,5 +156,6 @@ export function started(
         : inherited(plan, item, start_ms, from),
     called: from?.called ?? null,
     exposure: from?.exposure ?? valueAt(matters, start_ms).noExposure,
+    alive: from?.alive ?? 1,
   }
 }

@@ -26,6 +26,7 @@ export type SlotTrack = {
   /** Last reading that was put to use or to the test. */
   readonly t_ms: number
   readonly raw_C: number | null
+  readonly before_C: number | null
   /** Scale of recent innovations; 1 = as expected. */
   readonly scale: number
   /** Spread of the probe from one reading to the next, K². */
@@ -81,7 +82,14 @@ export type ItemTrack = {
   readonly strong: number
   /** Exposure while liquid, for each exponent of the nucleation grid. */
   readonly exposure: readonly number[]
-  /** Low quantile of the chance that it has turned on exposure alone, as last reckoned. */
+  /** Chance of having stayed liquid through that exposure. */
+  readonly alive: number
+  /** Running mean of its surroundings, °C, for forecasts. */
+  readonly env_C: number
+  readonly env_ms: number
+  /** Poised by the chance when it was last reckoned on the track, and when that was. */
+  readonly poised: boolean
+  readonly poised_ms: number
   readonly phase: Phase
   /** Ice of the estimate at instants of the last half hour or so, for freezing against thawing. */
   readonly ice: readonly (readonly [t_ms: number, ice_kg_kg: number])[]
@@ -98,6 +106,7 @@ export type AirTrack = {
   readonly trusted_ms: number
   readonly trusted_C: number
   readonly raw_C: number
+  readonly before_C: number | null
   readonly same: number
   readonly sameFrom_ms: number
   readonly sameLog: number
@@ -178,6 +187,7 @@ export const emptySlot: SlotTrack = {
   trusted_C: null,
   t_ms: -1,
   raw_C: null,
+  before_C: null,
   scale: 1,
   noise_K2: 0,
   count: 0,
@@ -208,6 +218,11 @@ export function freshState(plan: Plan, group: Group): GroupState {
         called: null,
         strong: 0,
         exposure: [],
+        alive: 1,
+        env_C: 0,
+        env_ms: -1,
+        poised: false,
+        poised_ms: -1,
         phase: 'unknown' as const,
         ice: [],
       }

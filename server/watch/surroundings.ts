@@ -4,12 +4,12 @@ import { valueAt } from './plan.js'
 import type { Jump } from './rivals.js'
 
 /** How much the surroundings of an item differ from the air that serves it, K (watch.md §3). */
-export const spreadOfPosition_K = { air: 0.9, buffer: 1.2, neighbour: 1.5, none: 8 }
+export const spreadOfPosition_K = { air: 0.9, buffer: 1.2, neighbour: 2, none: 8 }
 
 /** How long a difference of position lasts: stock is moved about within the day, s. */
 const position_s = 12 * 3600
-/** Surroundings that nobody measures wander: K² per s, 2 K in an hour [common practice]. */
-const wander_K2_s = 4 / 3600
+/** Surroundings that nobody measures wander: K² per s, 1 K in an hour [common practice]. */
+const wander_K2_s = 1 / 3600
 /** Unmeasured surroundings are not less certain than this, K. */
 const widest_K = 14
 

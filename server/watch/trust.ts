@@ -81,6 +81,30 @@ export function runOf<T extends Run>(
 export const isStuck = (run: Pick<AirTrack, 'same' | 'sameLog'>): boolean =>
   run.same >= fewestInRun && run.sameLog < stuckLog
 
+/** How fast the noise of a probe is learned, and from which run of one value on it learns no more. */
+const noiseGain = 0.05
+const longRun = 4
+
+/**
+ * Noise of a probe beyond its resolution, K², after one more reading: from second differences, which
+ * a steady ramp does not enter; what rounding alone makes is taken off.
+ */
+export function noiseAfter(
+  last: {
+    readonly noise_K2: number
+    readonly raw_C: number | null
+    readonly before_C: number | null
+  },
+  raw_C: number,
+  same: number,
+  resolution_K: number,
+): number {
+  if (last.raw_C === null || last.before_C === null || same > longRun) return last.noise_K2
+  const bend = (raw_C - 2 * last.raw_C + last.before_C) ** 2 / 6 - resolution_K ** 2 / 12
+  const most = 9 * Math.max(last.noise_K2, 0.004)
+  return Math.max(0, last.noise_K2 + noiseGain * (Math.min(bend, most) - last.noise_K2))
+}
+
 /** Standard normal distribution function (Abramowitz & Stegun 1964, 26.2.17; error below 1e-7). */
 export function normal(x: number): number {
   const t = 1 / (1 + 0.2316419 * Math.abs(x))
