@@ -1,3 +1,4 @@
+import { parse, refusalsOf } from '../../config/schema/parse.js'
 import { Refusal } from '../../config/schema/refusal.js'
 
 /** What a question of a headless command turns into. */
@@ -48,6 +49,23 @@ export const rounded = (value: unknown): unknown => {
   if (typeof value === 'object' && value !== null)
     return Object.fromEntries(Object.entries(value).map(([key, v]) => [key, rounded(v)]))
   return value
+}
+
+/**
+ * A question in its checked shape. Of several complaints a misspelt name comes first: it is most
+ * often why another one is missing.
+ *
+ * @throws Refusal with the sender's own path
+ */
+export function asked<T extends Parameters<typeof parse>[0]>(
+  shape: T,
+  question: unknown,
+): ReturnType<typeof parse<T>> {
+  try {
+    return parse(shape, question)
+  } catch (error) {
+    throw refusalsOf(shape, question).find(({ code }) => code === 'unknown-field') ?? error
+  }
 }
 
 /**

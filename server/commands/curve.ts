@@ -1,8 +1,7 @@
 import { realpathSync } from 'node:fs'
 import { fileURLToPath } from 'node:url'
-import { z } from 'zod'
 import { readSolutes } from '../../config/library/read.js'
-import { parse } from '../../config/schema/parse.js'
+import { CurveQuestion } from '../../config/schema/question.js'
 import { Refusal } from '../../config/schema/refusal.js'
 import { coldestLiquid_C, warmest_C } from '../physics/constants.js'
 import {
@@ -14,17 +13,8 @@ import {
 } from '../physics/curves.js'
 import type { SoluteTable } from '../physics/solution.js'
 import { substanceOf } from '../physics/substance.js'
-import { type Answer, askedAt, type Command, runCommand } from './ask.js'
-import { AskedProduct, flagsOf } from './freeze.js'
-
-/** A picture has a few hundred points; a table a few thousand. */
-const mostTemperatures = 100_000
-
-const CurveQuestion = z.strictObject({
-  id: z.union([z.string(), z.number()]).optional(),
-  product: AskedProduct,
-  temperatures_C: z.array(z.number()).max(mostTemperatures),
-})
+import { type Answer, asked, askedAt, type Command, runCommand } from './ask.js'
+import { flagsOf } from './freeze.js'
 
 const within = (t_C: number, at: string): number => {
   if (t_C >= coldestLiquid_C && t_C <= warmest_C) return t_C
@@ -44,9 +34,9 @@ const within = (t_C: number, at: string): number => {
  * @throws          Refusal with the sender's own path
  */
 export function curve(question: unknown, solutes: SoluteTable): Answer {
-  const asked = parse(CurveQuestion, question)
-  const s = askedAt('product', () => substanceOf(asked.product, solutes))
-  const temperatures_C = asked.temperatures_C.map((t, i) => within(t, `temperatures_C[${i}]`))
+  const q = asked(CurveQuestion, question)
+  const s = askedAt('product', () => substanceOf(q.product, solutes))
+  const temperatures_C = q.temperatures_C.map((t, i) => within(t, `temperatures_C[${i}]`))
   return {
     freezingPoint_C: s.freezingPoint_C,
     freezingPoint_u_K: s.freezingPoint_u_K,

@@ -1,36 +1,14 @@
 import { realpathSync } from 'node:fs'
 import { fileURLToPath } from 'node:url'
-import { z } from 'zod'
 import { readSolutes } from '../../config/library/read.js'
-import { celsius } from '../../config/schema/must.js'
-import { parse } from '../../config/schema/parse.js'
-import {
-  Container,
-  ContainerPhysics,
-  Product,
-  ProductPhysics,
-} from '../../config/schema/product.js'
+import { FreezeQuestion } from '../../config/schema/question.js'
 import { couplingOf, wallShare_kJ_kgK } from '../physics/container.js'
 import { solidifying } from '../physics/freezingTime.js'
 import { drivingForce_J_kg, entropyProduction_J_kgK } from '../physics/fusion.js'
 import { jump } from '../physics/jump.js'
 import type { SoluteTable } from '../physics/solution.js'
 import { type Substance, substanceOf } from '../physics/substance.js'
-import { type Answer, askedAt, type Command, runCommand } from './ask.js'
-
-/** The product of a question; one of a site file may be pasted as it is. */
-export const AskedProduct = z.strictObject({
-  ...Product.partial().shape,
-  ...ProductPhysics.shape,
-})
-
-const FreezeQuestion = z.strictObject({
-  id: z.union([z.string(), z.number()]).optional(),
-  product: AskedProduct,
-  container: z.strictObject({ ...Container.partial().shape, ...ContainerPhysics.shape }).optional(),
-  from_C: z.number(),
-  air_C: celsius.nullable().optional(),
-})
+import { type Answer, asked, askedAt, type Command, runCommand } from './ask.js'
 
 /** What a reader must know of a product's figures down to a temperature. */
 export const flagsOf = (s: Substance, coldest_C: number): string[] => [
@@ -49,10 +27,10 @@ export const flagsOf = (s: Substance, coldest_C: number): string[] => [
  * @throws          Refusal with the sender's own path
  */
 export function freeze(question: unknown, solutes: SoluteTable): Answer {
-  const asked = parse(FreezeQuestion, question)
-  const substance = askedAt('product', () => substanceOf(asked.product, solutes))
-  const { container, from_C } = asked
-  const air_C = asked.air_C ?? null
+  const q = asked(FreezeQuestion, question)
+  const substance = askedAt('product', () => substanceOf(q.product, solutes))
+  const { container, from_C } = q
+  const air_C = q.air_C ?? null
   const wall_kJ_kgK = container === undefined ? 0 : wallShare_kJ_kgK(container)
   const coupling =
     container === undefined ? null : askedAt('container', () => couplingOf(container))
