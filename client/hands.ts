@@ -1,11 +1,6 @@
 import type { ItemView, Snapshot } from '../config/schema/api.js'
 import type { Interval } from '../config/schema/verdict.js'
-import {
-  isAsIntended,
-  isFalling,
-  isUrgentNear,
-  shownStanding,
-} from './shown.js'
+import { isAsIntended, isFalling, isUrgentNear, shownStanding } from './shown.js'
 
 /** Why an item needs a hand, most pressing first (rulings.md 14). */
 export type Need = 'turned' | 'poised' | 'below' | 'reaching' | 'silent'
@@ -143,9 +138,8 @@ export const handsNeeded = (items: readonly ItemView[], policy: Policy): readonl
 
 /** Items whose line lies within the uncertainty, and which nobody needs to go to. */
 export const withinUncertainty = (items: readonly ItemView[], policy: Policy): number =>
-  items.filter(
-    (i) => shownStanding(i) === 'Near' && !isAsIntended(i) && !isUrgentNear(i, policy),
-  ).length
+  items.filter((i) => shownStanding(i) === 'Near' && !isAsIntended(i) && !isUrgentNear(i, policy))
+    .length
 
 /** Items of which nothing can be said. */
 export const notAssessable = (items: readonly ItemView[]): number =>

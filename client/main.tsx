@@ -11,12 +11,12 @@ import { Frame } from './parts/Frame.js'
 import { follow, route } from './route.js'
 import { isPhone } from './screen.js'
 import { itemById, load } from './site.js'
-import { say } from './words.js'
 import { Hands } from './views/Hands.js'
 import { ItemSheet } from './views/ItemSheet.js'
 import { More } from './views/More.js'
 import { Probes } from './views/Probes.js'
 import { Waterline } from './views/Waterline.js'
+import { say } from './words.js'
 
 /** The line at 0, nothing above or below it, and in words what is being fetched. */
 const Loading = () => (

@@ -5,8 +5,8 @@ import {
   isAsIntended,
   isWithdrawn,
   marginU_K,
-  shownStanding,
   shortPlace,
+  shownStanding,
   turnedAt_ms,
 } from './shown.js'
 import { say } from './words.js'
@@ -68,7 +68,7 @@ const placeOf = (item: ItemView): string => shortPlace(item.position)
 const turnedHeadline = (first: ItemView, count: number): string => {
   if (isWithdrawn(first)) return say('hands.withdrawn', { name: first.productName })
   const key = first.verdict.turned.reckoned ? 'hands.turnedReckoned' : 'hands.turned'
-  return say(key, { count, name: first.productName, place: placeOf(first) })
+  return say(key, { count, name: first.productName, place: first.position })
 }
 
 /** What is happening, as one sentence. */
@@ -76,7 +76,7 @@ export const headline = (entry: Entry, at: At): string => {
   const first = entry.items[0]?.item
   if (first === undefined) return ''
   const same = entry.items.filter((n) => n.need === entry.need)
-  const values = { count: same.length, name: first.productName, place: placeOf(first) }
+  const values = { count: same.length, name: first.productName, place: first.position }
   if (entry.cause === 'warming') return say('hands.warming', values)
   switch (entry.need) {
     case 'turned':
@@ -116,20 +116,27 @@ const leftSentence = ({ item, need, lead }: NeedyItem, site: Site): string | nul
   return null
 }
 
-/** Sentences about one entry that a person can take in; more would not be read. */
-const leftAtMost = 2
-
-/** What happens where nobody acts, in the order of the entry's items. */
-export const ifLeft = (entry: Entry, site: Site): string =>
+/**
+ * What happens where nobody acts, in the order of the entry's items.
+ *
+ * @param atMost  sentences; more than two would not be read
+ */
+export const ifLeft = (entry: Entry, site: Site, atMost: number): string =>
   entry.items
     .map((needy) => leftSentence(needy, site))
     .filter((text) => text !== null)
-    .slice(0, leftAtMost)
+    .slice(0, atMost)
     .join(' ')
 
-/** The first reasons of the most pressing item. */
-export const reasons = (entry: Entry): string =>
-  (entry.items[0]?.item.verdict.why ?? []).slice(0, 2).join(' ')
+/** What is read at a glance is short; the Item sheet has every reason. */
+const reasonsAtMost_characters = 150
+
+/** The first reason of the most pressing item, and the second where both are short. */
+export const reasons = (entry: Entry): string => {
+  const [first = '', second] = entry.items[0]?.item.verdict.why ?? []
+  const both = second === undefined ? first : `${first} ${second}`
+  return both.length <= reasonsAtMost_characters ? both : first
+}
 
 /** What a lane's link is called, for who hears the page. */
 export const laneLabel = (item: ItemView): string =>

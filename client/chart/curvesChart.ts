@@ -116,7 +116,14 @@ const drawLabels = (chart: Chart, view: CurvesView): void => {
     }
   }
   const plateau = (area.left + x.getPixelForValue(0)) / 2
-  write(chart, view, view.say('curves.plateau'), plateau, y.getPixelForValue(freezingPoint_C) - 9, 'center')
+  write(
+    chart,
+    view,
+    view.say('curves.plateau'),
+    plateau,
+    y.getPixelForValue(freezingPoint_C) - 9,
+    'center',
+  )
   const warm = liquid.find(([, T]) => T >= (y.max + freezingPoint_C) / 2)
   if (warm !== undefined)
     write(
@@ -128,6 +135,10 @@ const drawLabels = (chart: Chart, view: CurvesView): void => {
       'right',
     )
   drawJump(chart, view)
+  ctx.font = `400 12px ${view.colours.font}`
+  ctx.fillStyle = view.colours['ink-2']
+  ctx.textAlign = 'right'
+  ctx.fillText('°C', area.left - 8, area.top - 10)
   ctx.strokeStyle = view.colours.ink
   ctx.lineWidth = 1
   ctx.setLineDash([])
@@ -145,7 +156,12 @@ const spanOf = ({ curves }: CurvesView) => {
   )
   const high = freezingPoint_C + 6
   const seen = equilibrium.filter(([, T]) => T >= low && T <= high).map(([h]) => h)
-  return { low: Math.floor(low), high: Math.ceil(high), from: Math.min(-50, ...seen), to: Math.max(20, ...seen) }
+  return {
+    low: Math.floor(low),
+    high: Math.ceil(high),
+    from: Math.min(-50, ...seen),
+    to: Math.max(20, ...seen),
+  }
 }
 
 /** Temperature against heat content: one number, two branches, and the jump between them. */
@@ -220,17 +236,9 @@ export const curvesChart = (canvas: HTMLCanvasElement) => {
           grid,
           border: { color: colours.ink },
           ticks: { ...ticks, callback: (v) => num(Number(v), 0) },
-          title: {
-            display: true,
-            text: '°C',
-            color: colours['ink-2'],
-            font: { family: colours.font, size: 12 },
-            padding: 0,
-            align: 'end',
-          },
         },
       }
-      chart.options.layout = { padding: { top: 8, right: 14 } }
+      chart.options.layout = { padding: { top: 24, right: 14 } }
       if (chart.width !== width || chart.height !== height) chart.resize(width, height)
       chart.update('none')
     },

@@ -7,6 +7,10 @@ const unitOf = (unit: string): DateTimeUnit => (unit === 'isoWeek' ? 'week' : un
 const at = (t_ms: number, { zone }: Options): DateTime =>
   DateTime.fromMillis(t_ms, { zone: zone ?? 'UTC' })
 
+/** Midnight before an instant, by the site's clock. */
+export const dayStart_ms = (t_ms: number, zone: string): number =>
+  at(t_ms, { zone }).startOf('day').toMillis()
+
 const formats = {
   datetime: 'yyyy-MM-dd HH:mm:ss',
   millisecond: 'HH:mm:ss',
@@ -29,7 +33,9 @@ _adapters._date.override<Options>({
     return at(t, this.options).toFormat(pattern)
   },
   add(t, amount, unit) {
-    return at(t, this.options).plus({ [unit]: amount }).toMillis()
+    return at(t, this.options)
+      .plus({ [unit]: amount })
+      .toMillis()
   },
   diff(a, b, unit) {
     return at(a, this.options).diff(at(b, this.options)).as(unitOf(unit))

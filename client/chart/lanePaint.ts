@@ -153,7 +153,8 @@ const drawSounding = (board: Board, scene: Scene, lane: Lane): void => {
   const { ctx } = board
   const { colours, size } = scene
   const x = board.x(lane.x + lane.w / 2)
-  const within = (y: number) => Math.max(board.top + 15 * size, Math.min(board.bottom - 5 * size, y))
+  const within = (y: number) =>
+    Math.max(board.top + 15 * size, Math.min(board.bottom - 5 * size, y))
   ctx.textAlign = 'center'
   ctx.textBaseline = 'alphabetic'
   setFont(board, scene, 15, 700)
@@ -181,7 +182,9 @@ const drawSounding = (board: Board, scene: Scene, lane: Lane): void => {
   const line = board.y(0)
   const clashes = over < line + 14 * size && over > line - 22 * size
   const y =
-    lane.mark === 'near' || clashes || over < board.top + 14 * size ? Math.max(under, line + 18 * size) : over
+    lane.mark === 'near' || clashes || over < board.top + 14 * size
+      ? Math.max(under, line + 18 * size)
+      : over
   const text = scene.stale
     ? duration(scene.now_ms - scene.asOf_ms)
     : lane.mark === 'near'
@@ -293,7 +296,14 @@ export const drawPinned = (board: Board, scene: Scene, lanes: readonly (Lane | F
     const text = texts.find((t) => ctx.measureText(t).width <= room)
     const y = run.low ? board.bottom - 42 * size : board.top + 46 * size
     if (text !== undefined)
-      haloText(ctx, text, (run.from + run.to) / 2, y, colours.ink, run.low ? colours.d1 : colours.air)
+      haloText(
+        ctx,
+        text,
+        (run.from + run.to) / 2,
+        y,
+        colours.ink,
+        run.low ? colours.d1 : colours.air,
+      )
     run = null
   }
   for (const lane of lanes) {
@@ -321,6 +331,18 @@ export const drawPinned = (board: Board, scene: Scene, lanes: readonly (Lane | F
   flush()
 }
 
+/** The place under a lane; where it is narrow, without what its storage unit is called. */
+const footText = ({ ctx }: Board, { size }: Scene, part: Lane | Fold): string => {
+  if (part.kind === 'fold') return `×${part.items.length}`
+  const place = shortPlace(part.item.position)
+  const room = Math.max(part.w + 2, 20 * size)
+  if (ctx.measureText(place).width <= room) return place
+  const tail = place.startsWith(part.item.storageUnit)
+    ? place.slice(part.item.storageUnit.length).replace(/^[\s-]+/, '')
+    : place
+  return fitted(ctx, tail === '' ? place : tail, room)
+}
+
 /** The foot of a lane: what it rests on, and its place. Calm places give way where room is short. */
 export const drawFeet = (board: Board, scene: Scene): void => {
   const { ctx } = board
@@ -331,7 +353,14 @@ export const drawFeet = (board: Board, scene: Scene): void => {
     if (part.kind === 'fold') continue
     const x = board.x(part.x + part.w / 2)
     const scale = Math.min(size, (part.w - 2) / 12)
-    drawEvidence(ctx, evidenceOf(part.item.verdict.evidence), x, board.bottom + 14 * size, scale, colours)
+    drawEvidence(
+      ctx,
+      evidenceOf(part.item.verdict.evidence),
+      x,
+      board.bottom + 14 * size,
+      scale,
+      colours,
+    )
   }
   ctx.textAlign = 'center'
   ctx.textBaseline = 'alphabetic'
@@ -343,10 +372,9 @@ export const drawFeet = (board: Board, scene: Scene): void => {
     ctx.fillStyle = pass ? colours.ink : colours['ink-2']
     for (const part of seen) {
       if (bold(part) !== pass) continue
-      const full = part.kind === 'fold' ? `×${part.items.length}` : shortPlace(part.item.position)
-      const text = fitted(ctx, full, Math.max(part.w + 4, 22 * size))
+      const text = footText(board, scene, part)
       const x = board.x(part.x + part.w / 2)
-      const half = ctx.measureText(text).width / 2 + 1.5
+      const half = ctx.measureText(text).width / 2 + 0.7
       if (taken.some(([a, b]) => x - half < b && x + half > a)) continue
       taken.push([x - half, x + half])
       ctx.fillText(text, x, board.bottom + 35 * size)

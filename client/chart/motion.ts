@@ -55,12 +55,18 @@ export const motion = (
   return {
     to(layout: Layout, atOnce: boolean): void {
       cancelAnimationFrame(frame)
-      if (atOnce || places.size === 0) return settle(layout)
+      if (atOnce || places.size === 0) {
+        settle(layout)
+        return
+      }
       const [fromPlaces, fromMargins] = [places, margins]
       const start = performance.now()
       const step = (now: number): void => {
         const part = Math.min(1, Math.max(0, (now - start) / move_ms))
-        if (part === 1) return settle(layout)
+        if (part === 1) {
+          settle(layout)
+          return
+        }
         const share = 1 - (1 - part) ** 3
         draw(layoutBetween(fromPlaces, layout, share), (item) => {
           const to = item.verdict.margin_K

@@ -160,7 +160,12 @@ export const drawChevron = (
 /** PRACTICE behind a chart's figures, so that no picture of it passes for a real one. */
 export const drawPractice = (
   ctx: CanvasRenderingContext2D,
-  area: { readonly left: number; readonly right: number; readonly top: number; readonly bottom: number },
+  area: {
+    readonly left: number
+    readonly right: number
+    readonly top: number
+    readonly bottom: number
+  },
   word: string,
   colours: Colours,
 ): void => {
@@ -177,7 +182,7 @@ export const drawPractice = (
   ctx.textAlign = 'center'
   ctx.textBaseline = 'middle'
   ctx.globalAlpha = 0.1
-  ctx.fillStyle = colours['stripe-a']
+  ctx.fillStyle = colours.red
   ctx.fillText(word, 0, 0)
   ctx.restore()
 }

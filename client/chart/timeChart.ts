@@ -10,14 +10,14 @@ import {
   PointElement,
   TimeScale,
 } from 'chart.js'
-import './dates.js'
 import type { ItemReadings, ItemView } from '../../config/schema/api.js'
 import { celsius, chance, clockMinute, interval, num } from '../format.js'
+import type { MarkKind } from '../shown.js'
+import { dayStart_ms } from './dates.js'
 import { drawMark, drawPractice, gapPattern } from './pen.js'
 import { haloText } from './scene.js'
 import { type Colours, faded } from './tokens.js'
 import { gapsOf, type Point, type Trace, tracesOf } from './traces.js'
-import type { MarkKind } from '../shown.js'
 
 Chart.register(LinearScale, TimeScale, LineController, LineElement, PointElement, Filler)
 
@@ -101,8 +101,14 @@ const datasets = (view: TimeView, traces: readonly Trace[]): Line[] => {
   ]
 }
 
+/** Steps of a temperature axis, K, of which the first that leaves at most eight is taken. */
+const niceSteps_K = [0.5, 1, 2, 5, 10, 20, 50] as const
+
 /** The temperatures to be seen, with room about them; at least 4 K, or noise would look like news. */
-const rangeOf = (view: TimeView, lines: readonly Line[]): { min: number; max: number } => {
+const rangeOf = (
+  view: TimeView,
+  lines: readonly Line[],
+): { min: number; max: number; step: number } => {
   const seen = lines
     .flatMap((line) => line.data)
     .filter((p) => p.x >= view.from_ms && p.x <= view.until_ms && p.y !== null)
@@ -110,8 +116,14 @@ const rangeOf = (view: TimeView, lines: readonly Line[]): { min: number; max: nu
   const { freezingPoint_C } = view.item.verdict
   const low = Math.min(freezingPoint_C - 1, ...seen)
   const high = Math.max(freezingPoint_C + 1, ...seen)
-  const pad = Math.max(0.6, (high - low) * 0.08, (4 - (high - low)) / 2)
-  return { min: Math.floor(low - pad), max: Math.ceil(high + pad) }
+  const pad = Math.max(0.4, (high - low) * 0.05, (4 - (high - low)) / 2)
+  const span = high - low + 2 * pad
+  const step = niceSteps_K.find((k) => span / k <= 10) ?? 100
+  return {
+    min: Math.floor((low - pad) / step) * step,
+    max: Math.ceil((high + pad) / step) * step,
+    step,
+  }
 }
 
 /** Under the data: tints, gaps, the own freezing point in its band, label limits. */
@@ -231,6 +243,34 @@ const labels = (chart: Chart, view: TimeView): void => {
     const times = `${clockMinute(gap.from_ms, view.zone)}–${clockMinute(gap.until_ms, view.zone)}`
     write(say('chart.gap', { times }), from + 4, area.bottom - 8, 400, colours.ink)
   }
+  for (const probe of tracesOf(view.readings))
+    for (const point of probe.doubtful) {
+      const at = x.getPixelForValue(point.x)
+      if (point.y === null || at < area.left || at > area.right) continue
+      // Off the scale: at its edge, with its figure. It never stretches the axis.
+      const high = point.y > y.max
+      if (!high && point.y >= y.min) continue
+      ctx.strokeStyle = colours['ink-3']
+      ctx.lineWidth = 1.6
+      const edge = high ? area.top + 8 : area.bottom - 8
+      ctx.beginPath()
+      for (const way of [1, -1]) {
+        ctx.moveTo(at - 4, edge - 4 * way)
+        ctx.lineTo(at + 4, edge + 4 * way)
+      }
+      ctx.stroke()
+      write(
+        say('chart.notBelieved', { T: celsius(point.y) }),
+        at + 8,
+        edge + 5,
+        400,
+        colours['ink-2'],
+      )
+    }
+  ctx.font = `400 12px ${colours.font}`
+  ctx.fillStyle = colours['ink-2']
+  ctx.textAlign = 'right'
+  ctx.fillText('°C', area.left - 8, area.top - 10)
   if (temperature_C !== null && now >= area.left && now <= area.right)
     drawMark(ctx, view.mark, now, y.getPixelForValue(temperature_C), 1, colours, view.stale)
   ctx.strokeStyle = colours.ink
@@ -250,12 +290,31 @@ const axis = (colours: Colours) => ({
   },
 })
 
+const minute_ms = 60_000
+const steps_min = [1, 2, 5, 10, 15, 20, 30, 60, 120, 180, 360, 720, 1440, 2880, 10_080, 43_200]
+/** A time and the room about it, px. */
+const tickRoom = 64
+
+/** Times that a person would write on an axis: whole steps of the site's own clock. */
+const roundTimes = (view: TimeView, width: number): { value: number }[] => {
+  const span = view.until_ms - view.from_ms
+  const step_ms =
+    (steps_min.find((m) => (span / (m * minute_ms)) * tickRoom <= width) ?? 43_200) * minute_ms
+  const midnight_ms = dayStart_ms(view.from_ms, view.zone)
+  const first = midnight_ms + Math.ceil((view.from_ms - midnight_ms) / step_ms) * step_ms
+  const count = Math.max(0, Math.floor((view.until_ms - first) / step_ms) + 1)
+  return Array.from({ length: count }, (_, i) => ({ value: first + i * step_ms }))
+}
+
 const timeAxis = (view: TimeView, shown: boolean) => ({
   ...axis(view.colours),
   type: 'time' as const,
   min: view.from_ms,
   max: view.until_ms,
   adapters: { date: { zone: view.zone } },
+  afterBuildTicks: (scale: { ticks: { value: number }[]; width: number; chart: Chart }) => {
+    scale.ticks = roundTimes(view, scale.chart.width - axisWidth)
+  },
   ...(shown ? {} : { ticks: { display: false } }),
 })
 
@@ -362,7 +421,8 @@ export const timeChart = (temperature: HTMLCanvasElement, chanceCanvas: HTMLCanv
     show(next: TimeView, width: number, heights: readonly [number, number]): void {
       view = next
       const lines = datasets(next, tracesOf(next.readings))
-      const { min, max } = rangeOf(next, lines)
+      const believed = lines.slice(0, lines.length - next.readings.probes.length)
+      const { min, max, step } = rangeOf(next, believed)
       const plain = axis(next.colours)
       above.data.datasets = lines
       above.options.scales = {
@@ -373,10 +433,14 @@ export const timeChart = (temperature: HTMLCanvasElement, chanceCanvas: HTMLCanv
           type: 'linear',
           min,
           max,
-          ticks: { ...plain.ticks, callback: (v) => num(Number(v), 0), precision: 0 },
+          ticks: {
+            ...plain.ticks,
+            stepSize: step,
+            callback: (v) => num(Number(v), step < 1 ? 1 : 0),
+          },
         },
       }
-      above.options.layout = { padding: { top: 18, right: 12 } }
+      above.options.layout = { padding: { top: 24, right: 12 } }
       below.data.datasets = stripLines(next)
       below.options.scales = {
         x: timeAxis(next, false),
@@ -386,7 +450,12 @@ export const timeChart = (temperature: HTMLCanvasElement, chanceCanvas: HTMLCanv
           type: 'linear',
           min: 0,
           max: 1,
-          ticks: { ...plain.ticks, stepSize: 0.5, callback: (v) => `${num(Number(v) * 100, 0)} %` },
+          ticks: {
+            ...plain.ticks,
+            autoSkip: false,
+            stepSize: 0.5,
+            callback: (v) => `${num(Number(v) * 100, 0)} %`,
+          },
         },
       }
       below.options.layout = { padding: { top: 8, right: 12 } }

@@ -86,21 +86,22 @@ export const drawLine = (board: Board, scene: Scene): void => {
   )
 }
 
-const isFree = (scene: Scene, lane: Lane): boolean => {
-  const margin = scene.margin(lane.item)
-  return isTinted(lane) && (margin === null || margin > 1.4)
-}
-
-/** Left end of the first calm run wide enough for a label that no mark stands in, px. */
-const freeRun = (board: Board, scene: Scene, width: number): number | null => {
+/** The first calm run wide enough for a label that no mark stands in: its left end and first lane. */
+const freeRun = (
+  board: Board,
+  scene: Scene,
+  width: number,
+  also: (lane: Lane) => boolean = () => true,
+): { x: number; lane: Lane } | null => {
   for (const bay of scene.layout.bays) {
-    let from: number | null = null
+    let from: { x: number; lane: Lane } | null = null
     for (const part of bay.parts) {
+      const x = board.x(part.x)
       const margin = part.kind === 'lane' ? scene.margin(part.item) : null
-      const clear =
-        part.kind === 'lane' && margin !== null && margin > 1.2 && board.x(part.x) >= board.left - 1
-      from = clear ? (from ?? board.x(part.x)) : null
-      if (from !== null && board.x(part.x + part.w) - from >= width) return from
+      if (part.kind === 'fold' || margin === null || margin < 1.2 || x < board.left - 1) from = null
+      else if (!also(part)) from = null
+      else from ??= { x, lane: part }
+      if (from !== null && x + part.w - from.x >= width) return from
     }
   }
   return null
@@ -113,20 +114,18 @@ export const drawLineLabels = (board: Board, scene: Scene): void => {
   setFont(board, scene, 12, 650)
   ctx.textAlign = 'left'
   ctx.textBaseline = 'alphabetic'
-  const lanes = scene.layout.bays.flatMap((b) => b.parts).filter((p) => p.kind === 'lane')
-  const seen = lanes.filter((l) => board.x(l.x) >= board.left - 1 && board.x(l.x) < board.right)
   const name = scene.say('waterline.line')
-  const at = freeRun(board, scene, ctx.measureText(name).width + 10)
+  const at = freeRun(board, scene, ctx.measureText(name).width + 10)?.x ?? null
   if (at !== null) haloText(ctx, name, at + 6, board.y(0) - 8 * size, colours.ink, colours.air)
-  const host = seen.find((l) => isFree(scene, l) && l.item.tints_K[1] !== null)
-  if (host === undefined) return
+  const run = freeRun(board, scene, 34 * size, (l) => isTinted(l) && l.item.tints_K[1] !== null)
+  if (run === null) return
   let above = Number.NEGATIVE_INFINITY
   for (const [i, text] of ['1 %', '10 %', '50 %'].entries()) {
-    const depth = host.item.tints_K[i]
+    const depth = run.lane.item.tints_K[i]
     if (depth === null || depth === undefined || depth <= scale_K.bottom) continue
     const y = Math.max(board.y(depth) - 3, above + 12 * size)
     above = y
     const tint = colours[tints[i] ?? 'd1']
-    haloText(ctx, text, board.x(host.x) + 4, y, colours.ink, tint, 2.5)
+    haloText(ctx, text, run.x + 4, y, colours.ink, tint, 2.5)
   }
 }

@@ -30,8 +30,7 @@ const boardOf = (chart: Chart): Board | null => {
     top,
     bottom,
     x: (along) => x.getPixelForValue(along),
-    y: (margin) =>
-      y.getPixelForValue(Math.max(scale_K.bottom, Math.min(scale_K.top, margin))),
+    y: (margin) => y.getPixelForValue(Math.max(scale_K.bottom, Math.min(scale_K.top, margin))),
   }
 }
 

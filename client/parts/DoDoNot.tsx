@@ -1,3 +1,4 @@
+import type { ComponentChildren } from 'preact'
 import type { CautionRow } from '../../config/schema/api.js'
 import { say } from '../words.js'
 import { DoNotSign, DoSign } from './Marks.js'
@@ -33,12 +34,20 @@ const Blocks = ({ row }: { row: CautionRow }) => (
  * What people do and do not: the most urgent situation in full, the others one press away. Never
  * one block without the other, and never without deferring to whoever decides.
  */
-export const DoDoNot = ({ rows }: { rows: readonly CautionRow[] }) => {
+export const DoDoNot = ({
+  rows,
+  after,
+}: {
+  rows: readonly CautionRow[]
+  /** What stands right under the two blocks. */
+  after?: ComponentChildren
+}) => {
   const [first, ...others] = rows
-  if (first === undefined) return null
+  if (first === undefined) return <>{after}</>
   return (
     <div class="cautions">
       <Blocks row={first} />
+      {after}
       {others.length > 0 && (
         <details class="more">
           <summary>

@@ -112,7 +112,9 @@ const Announcer = () => {
   const entries = hands.value
   useEffect(() => {
     const pressing = entries.filter((e) => e.need === 'turned' || e.need === 'poised')
-    const fresh = pressing.filter((e) => known.current !== null && !known.current.has(e.key + e.need))
+    const fresh = pressing.filter(
+      (e) => known.current !== null && !known.current.has(e.key + e.need),
+    )
     if (picture.value !== null) known.current = new Set(pressing.map((e) => e.key + e.need))
     const [first] = fresh
     const site = picture.value?.site

@@ -3,6 +3,7 @@ import type { CautionRow } from '../../config/schema/api.js'
 import { clock } from '../format.js'
 import { type Entry, type NeedyItem, notAssessable, withinUncertainty } from '../hands.js'
 import { follow, itemPath } from '../route.js'
+import { isPhone, isWall } from '../screen.js'
 import {
   headline,
   ifLeft,
@@ -19,8 +20,8 @@ import { say } from '../words.js'
 import { DoDoNot } from './DoDoNot.js'
 import { Chip, EvidenceMark, Mark } from './Marks.js'
 
-/** Rows shown at once; the rest are one press away. */
-const rowsAtFirst = 5
+/** Rows shown at once; the rest are one press away. On a phone what to do must still be in sight. */
+const rowsAtFirst = { phone: 3, wall: 4, desk: 5 } as const
 
 const Row = ({ needy, known }: { needy: NeedyItem; known: Picture }) => {
   const { item } = needy
@@ -42,7 +43,9 @@ const Row = ({ needy, known }: { needy: NeedyItem; known: Picture }) => {
 
 const Rows = ({ entry, known }: { entry: Entry; known: Picture }) => {
   const all = useSignal(false)
-  const shown = all.value ? entry.items : entry.items.slice(0, rowsAtFirst)
+  const shown = all.value
+    ? entry.items
+    : entry.items.slice(0, rowsAtFirst[isPhone.value ? 'phone' : isWall.value ? 'wall' : 'desk'])
   const hidden = entry.items.length - shown.length
   return (
     <>
@@ -65,17 +68,24 @@ const rowsOf = (keys: readonly string[]): CautionRow[] =>
 
 const Opened = ({ entry, known }: { entry: Entry; known: Picture }) => {
   const why = reasons(entry)
-  const left = ifLeft(entry, known.site)
-  return (
+  const short = isPhone.value || isWall.value
+  const left = ifLeft(entry, known.site, short ? 1 : 2)
+  const texts = (
     <>
-      {why !== '' && <p>{why}</p>}
+      {why !== '' && <p class="reasons">{why}</p>}
       {left !== '' && (
         <p>
           <b>{say('hands.ifLeft')}</b> {left}
         </p>
       )}
+    </>
+  )
+  // On a phone what to do and not to do stands before what may be read later.
+  return (
+    <>
+      {!isPhone.value && texts}
       <Rows entry={entry} known={known} />
-      <DoDoNot rows={rowsOf(entry.cautions)} />
+      <DoDoNot rows={rowsOf(entry.cautions)} after={isPhone.value && texts} />
     </>
   )
 }

@@ -12,7 +12,15 @@ import type { Asked } from './useAsked.js'
 import { useFontsLoaded, useWidth } from './useCanvasBox.js'
 
 /** The two curves and the jump between them. */
-const Curves = ({ item, known, curves }: { item: ItemView; known: Picture; curves: ItemCurves }) => {
+const Curves = ({
+  item,
+  known,
+  curves,
+}: {
+  item: ItemView
+  known: Picture
+  curves: ItemCurves
+}) => {
   const box = useRef<HTMLDivElement>(null)
   const canvas = useRef<HTMLCanvasElement>(null)
   const width = useWidth(box)

@@ -65,7 +65,12 @@ export const HasIceFormed = ({ item, at }: { item: ItemView; at: Zoned }) => {
         {item.count > 1 && (
           <div>
             <dt>{say('ice.count')}</dt>
-            <dd>{say('ice.ofCount', { range: interval(turned.count[0], turned.count[2], 0), count: String(item.count) })}</dd>
+            <dd>
+              {say('ice.ofCount', {
+                range: interval(turned.count[0], turned.count[2], 0),
+                count: String(item.count),
+              })}
+            </dd>
           </div>
         )}
         {turned.earliest !== null && turned.latest !== null && (

@@ -1,13 +1,13 @@
 import { useSignal } from '@preact/signals'
 import { api, remedyOf } from '../api.js'
-import { isWall } from '../screen.js'
+import { isPhone, isWall } from '../screen.js'
 import { picture } from '../site.js'
 import { say } from '../words.js'
 
 const speeds = [1, 10, 60, 300] as const
 
-/** How fast the simulated site's clock runs; it reads as changed only once the server has said so. */
-const Speed = ({ speed }: { speed: number }) => {
+/** Sets the clock's speed; the bar reads as changed only once the server has said so. */
+const useSpeed = () => {
   const failed = useSignal<string | null>(null)
   const set = async (wanted: number): Promise<void> => {
     failed.value = null
@@ -17,6 +17,11 @@ const Speed = ({ speed }: { speed: number }) => {
       failed.value = remedyOf(error, say('error.unreachable'))
     }
   }
+  return { failed, set }
+}
+
+const Speed = ({ speed }: { speed: number }) => {
+  const { failed, set } = useSpeed()
   return (
     <fieldset class="speed">
       <legend>{say('practice.speed')}</legend>
@@ -30,8 +35,30 @@ const Speed = ({ speed }: { speed: number }) => {
   )
 }
 
+/** The same on a phone, where four buttons would push the figures out of sight. */
+const SpeedChoice = ({ speed }: { speed: number }) => {
+  const { failed, set } = useSpeed()
+  const known = speeds.some((s) => s === speed)
+  return (
+    <label class="speed-choice">
+      {say('practice.speed')}{' '}
+      <select
+        value={String(speed)}
+        onChange={(event) => void set(Number(event.currentTarget.value))}
+      >
+        {[...speeds, ...(known ? [] : [speed])].map((s) => (
+          <option key={s} value={String(s)}>
+            {say('practice.times', { speed: String(s) })}
+          </option>
+        ))}
+      </select>
+      {failed.value !== null && <span role="alert">{failed.value}</span>}
+    </label>
+  )
+}
+
 /** One probe that the simulator leaves alone, and the message that moves it. */
-const TryProbe = () => {
+export const TryProbe = () => {
   const probe = picture.value?.site.tryProbe ?? null
   if (probe === null) return null
   const url = new URL(probe.mqtt)
@@ -52,8 +79,7 @@ const TryProbe = () => {
             <code>{probe.name}</code>
           </dd>
         </dl>
-        {/* biome-ignore lint/a11y/noNoninteractiveTabindex: it scrolls on a narrow screen */}
-        <pre tabIndex={0}>{`mosquitto_pub -h ${url.hostname} -p ${port} -q 1 -t '${probe.topic}' -m '${message}'`}</pre>
+        <pre>{`mosquitto_pub -h ${url.hostname} -p ${port} -q 1 -t '${probe.topic}' -m '${message}'`}</pre>
       </div>
     </details>
   )
@@ -63,6 +89,14 @@ const TryProbe = () => {
 export const PracticeBar = () => {
   const site = picture.value?.site
   if (site === undefined || !site.practice) return null
+  if (isPhone.value)
+    return (
+      <section class="practice-bar" aria-label={say('practice.word')}>
+        <b>{say('practice.word')}</b>
+        <SpeedChoice speed={site.speed} />
+        <span class="what">{say('practice.short')}</span>
+      </section>
+    )
   return (
     <section class="practice-bar" aria-label={say('practice.word')}>
       <b>{say('practice.word')}</b>

@@ -51,9 +51,7 @@ export const ReadingsTable = ({
     // biome-ignore lint/a11y/noNoninteractiveTabindex: it scrolls by itself
     <section class="scroll figures" aria-label={say('figures.title')} tabIndex={0}>
       <table>
-        <caption>
-          {say('figures.read', { shown: shown.length, all: read.length })}
-        </caption>
+        <caption>{say('figures.read', { shown: shown.length, all: read.length })}</caption>
         <thead>
           <tr>
             <th scope="col">{say('figures.time')}</th>
@@ -96,9 +94,7 @@ export const ReadingsTable = ({
                 <tr key={t} class="reckoned">
                   <td class="num">{clock(t, zone)}</td>
                   <td class="r num">{interval(low, high)}</td>
-                  <td class="r num">
-                    {likely === undefined ? '–' : chance(likely[1], likely[3])}
-                  </td>
+                  <td class="r num">{likely === undefined ? '–' : chance(likely[1], likely[3])}</td>
                 </tr>
               )
             })}

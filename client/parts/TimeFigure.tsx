@@ -1,8 +1,8 @@
 import { effect, useComputed, useSignal } from '@preact/signals'
 import { useEffect, useRef } from 'preact/hooks'
 import type { ItemReadings, ItemView } from '../../config/schema/api.js'
-import { readColours } from '../chart/tokens.js'
 import { api, remedyOf } from '../api.js'
+import { readColours } from '../chart/tokens.js'
 import { clock, clockMinute, num, offset } from '../format.js'
 import { isPhone } from '../screen.js'
 import { markOf } from '../shown.js'
@@ -26,10 +26,7 @@ const points = 1500
 type Span = { readonly from_ms: number; readonly until_ms: number } | null
 
 const zoomed = (span: { from_ms: number; until_ms: number }, factor: number) => {
-  const wide = Math.max(
-    narrowest_ms,
-    Math.min(widest_ms, (span.until_ms - span.from_ms) * factor),
-  )
+  const wide = Math.max(narrowest_ms, Math.min(widest_ms, (span.until_ms - span.from_ms) * factor))
   const middle = (span.from_ms + span.until_ms) / 2
   return { from_ms: middle - wide / 2, until_ms: middle + wide / 2 }
 }
@@ -47,7 +44,15 @@ const Legend = ({ readings }: { readings: ItemReadings | null }) => {
         <li key={placement}>
           <svg width="26" height="12" aria-hidden="true">
             {placement === 'in-buffer' ? (
-              <rect x="9" y="2" width="8" height="8" fill="var(--sheet)" stroke="var(--ink)" stroke-width="1.5" />
+              <rect
+                x="9"
+                y="2"
+                width="8"
+                height="8"
+                fill="var(--sheet)"
+                stroke="var(--ink)"
+                stroke-width="1.5"
+              />
             ) : (
               <g stroke="var(--ink)" fill="var(--ink)">
                 <path d="M0 6H26" stroke-width="1.3" />
@@ -96,8 +101,9 @@ export const TimeFigure = ({ item, known }: { item: ItemView; known: Picture }) 
     timeAt(px: number): number
   } | null>(null)
 
-  // Followed in whole minutes, so that the axis does not crawl with every batch.
-  const followed_ms = Math.ceil(known.asOf_ms / minute_ms) * minute_ms
+  // Followed in steps of five minutes, so that the axis does not crawl with every batch.
+  const step_ms = 5 * minute_ms
+  const followed_ms = Math.ceil(known.asOf_ms / step_ms) * step_ms
   const seen = span.value ?? {
     from_ms: followed_ms - behind_ms,
     until_ms: followed_ms + ahead_ms,
@@ -201,7 +207,7 @@ export const TimeFigure = ({ item, known }: { item: ItemView; known: Picture }) 
     until: clock(seen.until_ms, zone),
   })
   return (
-    <section class="chart figure" aria-label={say('chart.title')}>
+    <section class="chart time-figure" aria-label={say('chart.title')}>
       <header>
         <h2>{say(phone ? 'chart.titleShort' : 'chart.title')}</h2>
         <small>
@@ -263,13 +269,11 @@ export const TimeFigure = ({ item, known }: { item: ItemView; known: Picture }) 
           </p>
         )}
         {/* The plot takes the keys: it is moved and zoomed as a whole. */}
-        {/* biome-ignore lint/a11y/noNoninteractiveElementInteractions: see above */}
-        {/* biome-ignore lint/a11y/useSemanticElements: an image that is drawn */}
         <div
           class="plot"
           role="img"
           aria-label={described}
-          // biome-ignore lint/a11y/noNoninteractiveTabindex: see above
+          // biome-ignore lint/a11y/noNoninteractiveTabindex: it takes the keys
           tabIndex={0}
           onKeyDown={onKeyDown}
           onDblClick={() => (span.value = null)}
@@ -302,7 +306,7 @@ export const TimeFigure = ({ item, known }: { item: ItemView; known: Picture }) 
         <p class="small">
           {item.verdict.chance === null
             ? say('chance.none')
-            : say('chance.rests', { basis: item.verdict.chance.basis })}
+            : say('chance.rests', { basis: item.verdict.chance.basis.replace(/\.$/, '') })}
         </p>
       </div>
       {!table.value && <Legend readings={readings} />}

@@ -38,10 +38,10 @@ const Row = memo(({ item, leadText, mark }: RowProps) => {
       <td class="r num">
         {margin_K === null || u_K === null ? '–' : marginInterval(margin_K, u_K)}
       </td>
-      <td class="r num">
+      <td class="r num spare">
         {item.verdict.temperature_C === null ? '–' : num(item.verdict.temperature_C)}
       </td>
-      <td class="r num">{num(item.verdict.freezingPoint_C, 2)}</td>
+      <td class="r num spare">{num(item.verdict.freezingPoint_C, 2)}</td>
       <td>
         <EvidenceMark evidence={item.verdict.evidence} words />
       </td>
@@ -79,10 +79,10 @@ export const TwinTable = () => {
             <th scope="col" class="r">
               {say('table.interval')}
             </th>
-            <th scope="col" class="r">
+            <th scope="col" class="r spare">
               {say('table.estimate')}
             </th>
-            <th scope="col" class="r">
+            <th scope="col" class="r spare">
               {say('table.line')}
             </th>
             <th scope="col">{say('table.rests')}</th>

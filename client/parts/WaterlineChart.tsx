@@ -13,11 +13,7 @@ import { theme } from '../theme.js'
 import { say } from '../words.js'
 
 /** Least widths in px; a mark of 20 px may overlap its neighbour's halo, never its place. */
-const rulesFor = (
-  width: number,
-  size: number,
-  opened: ReadonlySet<string>,
-): LaneRules => ({
+const rulesFor = (width: number, size: number, opened: ReadonlySet<string>): LaneRules => ({
   width: width - scaleWidth(size) - edges.right,
   least: 13 * size,
   comfortable: 17 * size,
@@ -215,7 +211,7 @@ export const WaterlineChart = ({
         onPointerLeave={() => point(null)}
       >
         <div class="stick" style={{ width: `${box.value.width}px` }}>
-          <canvas ref={canvas} class={ready.value ? 'drawn' : ''} aria-hidden="true" />
+          <canvas ref={canvas} class={ready.value ? 'drawn' : ''} />
           {!ready.value && <p class="fetching">{say('loading.chart')}</p>}
           {inSight.map((part) => {
             const key = keyOf(part)

@@ -29,7 +29,7 @@ export const useAsked = <T>(
     last.current = { started_ms: 0, turn: last.current.turn + 1 }
     state.value = { kind: 'asking' }
   }
-  // biome-ignore lint/correctness/useExhaustiveDependencies: `fresh` is why it asks again
+  // `fresh` is read by nothing here: that it changed is why this asks again.
   useEffect(() => {
     const turn = last.current.turn
     const start = (): void => {

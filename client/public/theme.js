@@ -7,7 +7,6 @@
     // No storage on this device: the system's own theme then.
   }
   const dark =
-    chosen === 'dark' ||
-    (chosen !== 'light' && matchMedia('(prefers-color-scheme: dark)').matches)
+    chosen === 'dark' || (chosen !== 'light' && matchMedia('(prefers-color-scheme: dark)').matches)
   document.documentElement.dataset.theme = dark ? 'dark' : 'light'
 })()

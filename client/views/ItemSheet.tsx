@@ -1,7 +1,7 @@
 import { useEffect } from 'preact/hooks'
 import type { CautionRow, ItemView } from '../../config/schema/api.js'
 import { api } from '../api.js'
-import { celsius, chance, duration, interval, num } from '../format.js'
+import { celsius, chance, duration, interval, num, signed } from '../format.js'
 import { DoDoNot } from '../parts/DoDoNot.js'
 import { IfItFreezes } from '../parts/IfItFreezes.js'
 import { HasIceFormed, NeverSaid, ReadingLimits, RestsOn, Trail, Why } from '../parts/ItemPanels.js'
@@ -15,27 +15,39 @@ import { isAsIntended, marginU_K, markOf, shortPlace } from '../shown.js'
 import { cautions, itemById, now_ms, type Picture, picture, stale } from '../site.js'
 import { say } from '../words.js'
 
+/** Where the line lies within the uncertainty, neither "below" nor "above" can be said. */
+const marginKey = (margin_K: number | null, u_K: number | null): string => {
+  if (margin_K === null || Math.abs(margin_K) <= 2 * (u_K ?? 0)) return 'lede.margin'
+  return margin_K < 0 ? 'lede.below' : 'lede.above'
+}
+
+const Margin = ({ margin_K, u_K }: { margin_K: number | null; u_K: number | null }) => {
+  if (margin_K === null) return <>–</>
+  const sure = marginKey(margin_K, u_K) !== 'lede.margin'
+  const size = sure ? Math.abs(margin_K) : margin_K
+  return (
+    <>
+      {sure ? num(size) : signed(size)} K{' '}
+      {u_K !== null && <i>({interval(size - 2 * u_K, size + 2 * u_K)})</i>}
+    </>
+  )
+}
+
 /** The row of figures: each with what it rests on. */
 const Lede = ({ item, known }: { item: ItemView; known: Picture }) => {
   const { verdict } = item
   const u_K = marginU_K(item)
   const mark = <EvidenceMark evidence={verdict.evidence} />
   const margin = verdict.margin_K
-  const below = margin !== null && margin < 0
-  const size = margin === null ? null : Math.abs(margin)
-  const ends =
-    size === null || u_K === null
-      ? null
-      : interval(size - 2 * u_K, size + 2 * u_K)
   const old = stale.value !== null
   return (
     <dl class="lede">
       <div>
         <dt>
-          {say(below ? 'lede.below' : 'lede.above')} {mark}
+          {say(marginKey(margin, u_K))} {mark}
         </dt>
         <dd>
-          {size === null ? '–' : `${num(size)} K`} {ends !== null && <i>({ends})</i>}
+          <Margin margin_K={margin} u_K={u_K} />
         </dd>
       </div>
       <div>
@@ -137,16 +149,16 @@ const Sheet = ({ item, known }: { item: ItemView; known: Picture }) => {
           <ReadingLimits item={item} />
           <HasIceFormed item={item} at={at} />
         </div>
+        <Why item={item} />
         <RestsOn curves={curves} item={item} />
+        <NeverSaid item={item} />
       </div>
       <div class="stack side">
-        <section aria-label={say('caution.title')}>
+        <section class="what-to-do" aria-label={say('caution.title')}>
           <DoDoNot rows={rowsOf(item.verdict.cautions)} />
         </section>
         <IfItFreezes item={item} known={known} asked={curves} />
-        <Why item={item} />
         <Trail asked={trail} at={at} policy={policy} item={item} />
-        <NeverSaid item={item} />
       </div>
       <p class="statement">{say('statement')}</p>
     </div>

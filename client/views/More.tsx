@@ -1,5 +1,6 @@
 import { ThemeSwitch } from '../parts/Frame.js'
 import { Key } from '../parts/Key.js'
+import { TryProbe } from '../parts/Practice.js'
 import { picture } from '../site.js'
 import { say } from '../words.js'
 
@@ -15,6 +16,7 @@ export const More = () => (
         <ThemeSwitch />
       </div>
     </section>
+    <TryProbe />
     <section class="panel" aria-label={say('key.title')}>
       <header>
         <h2>{say('key.title')}</h2>

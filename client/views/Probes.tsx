@@ -41,7 +41,7 @@ const Calibration = ({ probe, now, zone }: { probe: ProbeView; now: number; zone
   return probe.calibrationDue_ms < now ? (
     <b class="overdue">{say('probes.overdue', { date })}</b>
   ) : (
-    <>{date}</>
+    date
   )
 }
 
@@ -68,9 +68,7 @@ const Row = ({ probe, known }: { probe: ProbeView; known: Picture }) => {
         <Age probe={probe} now={now} />
       </td>
       <td class="num">
-        {probe.trusted_ms === null
-          ? say('probes.never')
-          : when(probe.trusted_ms, now, zone)}
+        {probe.trusted_ms === null ? say('probes.never') : when(probe.trusted_ms, now, zone)}
         {probe.silent && <small>{say('probes.silent')}</small>}
       </td>
       <td class="r num">{probe.reading_C === null ? '–' : celsius(probe.reading_C, 2)}</td>

@@ -70,7 +70,8 @@ const launchPacked = async (): Promise<Browser> => {
   const dir = unpack()
   const executablePath = join(dir, 'chromium')
   const env: Record<string, string> = {}
-  for (const [name, value] of Object.entries(process.env)) if (value !== undefined) env[name] = value
+  for (const [name, value] of Object.entries(process.env))
+    if (value !== undefined) env[name] = value
   const own = process.env.HOARLINE_BROWSER_LIBRARIES === 'own' || lacksLibraries(executablePath)
   if (own) env.LD_LIBRARY_PATH = join(dir, 'al2023', 'lib')
   if (!existsSync('/etc/fonts')) env.FONTCONFIG_PATH = join(dir, 'fonts')

@@ -125,7 +125,8 @@ const crossingOf = (fan: readonly Fan[], t: number): Interval | null => {
 const cautionsOf = (known: Known, standing: Standing): string[] => {
   const { spec, unit } = known
   const extra = spec.kind.cautions.filter((key) => key === 'glass' || key === 'adsorbed')
-  if (spec.intended === true) return [unit.id === 'FZ-1' ? 'intended-frozen' : 'intended-supercooled']
+  if (spec.intended === true)
+    return [unit.id === 'FZ-1' ? 'intended-frozen' : 'intended-supercooled']
   if (standing === 'Turned') return ['just-turned', ...extra]
   if (standing === 'Silent') return ['state-unknown', ...extra]
   if (standing === 'Below' || standing === 'Poised')
@@ -250,7 +251,8 @@ const verdictOf = (known: Known, t: number): Verdict => {
         }
       : null,
     crossing: {
-      below_h: standing === 'Above' || standing === 'Near' ? crossingOf(fanOf(known, t, u), t) : null,
+      below_h:
+        standing === 'Above' || standing === 'Near' ? crossingOf(fanOf(known, t, u), t) : null,
       above_h: null,
     },
     limits: {
@@ -314,11 +316,7 @@ const viewOf = (known: Known, t: number): ItemView => {
       .map((s) => [start_ms + s.t * minute_ms, s.T - kind.Tf] as const),
     forecast: spec.silent === true ? [] : fanOf(known, t, u),
     poisedIn_h: verdict.standing === 'Below' && spec.intended !== true ? [0.1, 0.17, 0.25] : null,
-    tints_K: [
-      depthFor(mass, 0.01),
-      depthFor(mass, 0.1),
-      depthFor(mass, 0.5),
-    ],
+    tints_K: [depthFor(mass, 0.01), depthFor(mass, 0.1), depthFor(mass, 0.5)],
   }
 }
 

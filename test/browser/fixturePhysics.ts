@@ -15,9 +15,7 @@ const iceAt = ({ Tf, water }: Liquid, T: number): number =>
 
 const hLiquid = ({ Tf }: Liquid, T: number): number => cpLiquid * (T - Tf)
 const hFrozen = (liquid: Liquid, T: number): number =>
-  T >= liquid.Tf
-    ? hLiquid(liquid, T)
-    : cpFrozen * (T - liquid.Tf) - latent * iceAt(liquid, T)
+  T >= liquid.Tf ? hLiquid(liquid, T) : cpFrozen * (T - liquid.Tf) - latent * iceAt(liquid, T)
 
 /** Bisection: 60 halvings of 90 K are far below a microkelvin. */
 const inverse = (f: (T: number) => number, h: number): number => {
