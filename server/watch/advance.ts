@@ -28,6 +28,11 @@ const unknownCause = (depth_K: number): number =>
 
 /** Uncertainty of an ordinary probe: only what goes beyond it counts towards a possible depth, K. */
 const ordinary_u_K = 0.15
+/**
+ * While a probe of its own is heard, kinetics may claim no more than this per hour: its interval
+ * spans decades, and what the probe shows must decide.
+ */
+const watchedMost_h = 0.1
 /** Below this depth no fresh candidate is made: the curves lie within the noise. */
 const leastDepth_K = 0.25
 /** A switching weight is never lighter than this per step: a real jump must be able to win. */
@@ -123,7 +128,8 @@ const noDrive = (plan: Plan, item: PlannedItem): Drive => ({
   keep: 1,
   deltaQ_K2: 0,
   tau_s: item.slots.map((s) => plan.probes[s.probe]!.tau_s),
-  gradientOnIce: item.slots.map((s) => (s.kind === 'wall' ? 1 : 0.3)),
+  outside: item.slots.map((s) => s.kind === 'wall'),
+  felt_C: 0,
 })
 
 /** Fresh candidates of every liquid branch for one stretch, and what is left of those. */
@@ -148,7 +154,8 @@ const withBirths = (
     const perhaps_K = depth_K + Math.max(0, u_K - ordinary_u_K)
     if (perhaps_K < leastDepth_K || drive.dt_s <= 0) return [c]
     const cause_h = watched ? unknownCause(perhaps_K) : 0
-    const chance = 1 - (1 - byKinetics) * Math.exp((-cause_h * drive.dt_s) / 3600)
+    const kinetics = watched ? Math.min(byKinetics, (watchedMost_h * drive.dt_s) / 3600) : byKinetics
+    const chance = 1 - (1 - kinetics) * Math.exp((-cause_h * drive.dt_s) / 3600)
     const share = Math.min(0.999999, Math.max(leastShare, chance))
     // A light rival gives birth to nothing that could ever count.
     if (c.branch.w + Math.log(share) < -32) return [c]
@@ -231,11 +238,12 @@ export function advance(
       ...drive,
       dt_s,
       base0_C: track.base_C,
+      felt_C: track.felt_C,
       baseMean_C: based ? (integral - track.mark_Ks) / dt_s : 0,
       base1_C,
       ...drift(based ? unit.source : 'none', stale, dt_s, top.g[at(n, Δ, Δ)]!),
     }
-    const watched = ownSpeaks(plan, item, track, next, 60)
+    const watched = ownSpeaks(plan, item, track, next, 8)
     const depth0 = depthOf(track.bank, matter)
     const T1 = liquidAhead_C(track.bank, matter, drive)
     const depth1 = T1 === null ? 0 : Math.max(0, matter.freezing_C - T1)

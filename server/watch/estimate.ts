@@ -1,5 +1,5 @@
 import { at, carryCovariance, type Gauss, mostUnknowns } from './gauss.js'
-import { heatCapacity_kJ_kgK, type Matter, temperature_C } from './matter.js'
+import { heatCapacity_kJ_kgK, ice_kg_kg, type Matter, temperature_C } from './matter.js'
 
 /**
  * The unknowns of an item on one branch, in this order:
@@ -34,8 +34,10 @@ export type Drive = {
   readonly deltaQ_K2: number
   /** Lag of each probe, s. */
   readonly tau_s: readonly number[]
-  /** Share of (1 − a) that counts while there is ice: slush has hardly a gradient inside. */
-  readonly gradientOnIce: readonly number[]
+  /** Does the probe touch the surroundings themselves (on a wall), or only the body's gradient? */
+  readonly outside: readonly boolean[]
+  /** Surroundings as the inside of the body has felt them, over its own time of conduction, °C. */
+  readonly felt_C: number
 }
 
 const F = new Float64Array(mostUnknowns * mostUnknowns)
@@ -52,6 +54,18 @@ const couplingNoise = 0.06
 /** Slow drifts of coupling (frost, stacking) and of what the probe touches, per s. */
 const lambdaDrift_s = 1e-8
 const shareDrift_s = 2e-9
+
+/** Slush has hardly a gradient inside; what is nearly solid conducts like any body. */
+const slushGradient = 0.25
+const slushUntil = 0.5
+const solidFrom = 0.95
+
+/** Share of the gradient of a still body that counts at an enthalpy with ice. */
+export function inSlush(matter: Matter, h: number): number {
+  const share = ice_kg_kg(matter, h) / matter.solidIce_kg_kg
+  const x = (share - slushUntil) / (solidFrom - slushUntil)
+  return slushGradient + (1 - slushGradient) * Math.min(1, Math.max(0, x))
+}
 
 /** How the new enthalpy leans on the surroundings: what a jump of them would have moved. */
 export const leaning = { h: 0, sensor: new Float64Array(8) }
@@ -122,10 +136,13 @@ export function carry(g: Gauss, n: number, matter: Matter, onIce: boolean, drive
     const s = sensorOf(slot)
     const b = biasOf(slot)
     const τ = drive.tau_s[slot]!
-    const soft = onIce ? drive.gradientOnIce[slot]! : 1
+    const outside = drive.outside[slot]!
+    const soft = onIce && !outside ? inSlush(matter, h) : 1
     const rest = (1 - g[a]!) * soft
-    const env0 = drive.base0_C + δ0
-    const env1 = drive.base1_C + δ1
+    // A gradient inside follows the surroundings slowly: a door must not move it at once.
+    const env0 = outside ? drive.base0_C + δ0 : drive.felt_C
+    const env1 = outside ? drive.base1_C + δ1 : drive.felt_C
+    const direct = outside ? rest : 0
     const G0 = T0 + rest * (env0 - T0)
     const G1 = T + rest * (env1 - T)
     const f = Math.exp(-dt_s / τ)
@@ -135,7 +152,7 @@ export function carry(g: Gauss, n: number, matter: Matter, onIce: boolean, drive
     const sensor = w1 * G1 + w0 * G0 + f * g[s]!
     const T1h = (1 - rest) / c1
     F[s * n + H] = w1 * T1h * hh + (w0 * (1 - rest)) / c0
-    F[s * n + Δ] = w1 * (T1h * toEnv + rest * drive.keep) + w0 * rest
+    F[s * n + Δ] = w1 * (T1h * toEnv + direct * drive.keep) + w0 * direct
     F[s * n + Λ] = w1 * T1h * toΛ
     F[s * n + a] = soft * (w1 * (T - env1) + w0 * (T0 - env0))
     F[s * n + s] = f

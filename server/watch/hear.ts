@@ -1,6 +1,6 @@
 import { advance, unknownsOf } from './advance.js'
 import { biasOf, sensorOf, Δ } from './estimate.js'
-import { at } from './gauss.js'
+import { at, type Gauss } from './gauss.js'
 import { forkOdds, opensFork, returned } from './lookalikes.js'
 import { temperature_C } from './matter.js'
 import { type Group, type Plan, valueAt } from './plan.js'
@@ -95,6 +95,28 @@ const calledBy = (track: ItemTrack, t_ms: number, trusted: boolean): Partial<Ite
     return { strong, called: { at_ms: t_ms, reckoned: placedAsIce, placedAsIce } }
   }
   return { strong }
+}
+
+/** Once a turn is called the liquid story keeps no more than this: the verdict stands by its word. */
+const doubtKept = Math.log(0.05)
+
+const committed = (track: ItemTrack, n: number): readonly Branch[] => {
+  if (track.called === null || track.called.reckoned) return track.bank
+  const over = track.bank.some((b) => b.kind === 'liquid' && b.w > doubtKept)
+  const iced = track.bank.some((b) => b.kind !== 'liquid')
+  if (!over || !iced) return track.bank
+  const cut = track.bank.map((b) =>
+    b.kind === 'liquid' ? { ...b, w: Math.min(b.w, doubtKept) } : b,
+  )
+  return thinned(raised(cut), n)
+}
+
+/** Stories with ice take up what the liquid one was not left. */
+const raised = (bank: readonly Branch[]): Branch[] => {
+  const liquid = sumLogs(bank.filter((b) => b.kind === 'liquid').map((b) => b.w))
+  const ice = sumLogs(bank.filter((b) => b.kind !== 'liquid').map((b) => b.w))
+  const rest = Math.log1p(-Math.exp(Math.min(liquid, -1e-9)))
+  return bank.map((b) => (b.kind === 'liquid' ? b : { ...b, w: b.w - ice + rest }))
 }
 
 const withSlot = (track: ItemTrack, k: number, slot: SlotTrack): ItemTrack => ({
@@ -249,8 +271,18 @@ export function hearOwn(
     k,
     trusting,
   )
+  track = { ...track, bank: committed(track, n) }
   const doubtful = track.fork !== null && track.fork.odds > 0
   return { ...track, ...calledBy(track, t_ms, !doubtful && kind !== 'sibling') }
+}
+
+/** A sensor known to stand at a reading, whatever it was thought to: nothing else is learned. */
+const sensorAt = (was: readonly number[], n: number, k: number, y_C: number, R_K2: number): Gauss => {
+  const g: Gauss = [...was]
+  const s = sensorOf(k)
+  for (let j = 0; j < n; j++) g[at(n, s, j)] = j === s ? R_K2 : 0
+  g[s] = y_C - g[biasOf(k)]!
+  return g
 }
 
 const thinOnly = (track: ItemTrack, n: number): ItemTrack => ({

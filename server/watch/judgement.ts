@@ -57,9 +57,10 @@ export function viewOf(
   if (moved.track.t_ms < 0 || moved.track.bank.length === 0) return null
   const track = thin(moved.track, unknownsOf(item))
   const matter = item.matter[track.matter]!.value
-  const estimate = reckoned(plan, item, track)
   const policy = valueAt(plan.policy, now_ms)
   const evidence = evidenceOf(plan, group, core, item, track, now_ms, policy.silentAfter_intervals)
+  const best = evidence[0]?.evidence ?? 'not assessable'
+  const estimate = reckoned(plan, item, track, isMeasured(best))
   const witness = item.witness < 0 ? null : core.items[group.localItem.get(item.witness)!]!
   return {
     item,
@@ -67,7 +68,7 @@ export function viewOf(
     matter,
     estimate,
     evidence,
-    best: evidence[0]?.evidence ?? 'not assessable',
+    best,
     heading: headingOf(core.units[group.localUnit.get(track.unit)!], track, matter, estimate),
     now_ms,
     witnessTurned: witness !== null && witness.called !== null,

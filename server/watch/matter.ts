@@ -4,7 +4,7 @@ import { equilibriumFrom, liquidTemperature_C } from '../physics/branches.js'
 import { coldestLiquid_C, warmest_C } from '../physics/constants.js'
 import { endOfFreezing_C, hEquilibrium, hLiquid, iceAt } from '../physics/curves.js'
 import { type Substance, substanceOf } from '../physics/substance.js'
-import { gradientOf } from './gradient.js'
+import { gradientOf, settlingOf } from './gradient.js'
 import { type Kinetics, kineticsOf } from './hazard.js'
 import type { Library } from './plan.js'
 
@@ -34,6 +34,8 @@ export type Matter = {
   readonly UA_W_K: number
   /** Centre less mean, per kelvin between the item and its surroundings, while still. */
   readonly gradient: number
+  /** Time in which a change of the surroundings reaches the inside by conduction, s. */
+  readonly settle_s: number
   /** Ice at −20 °C, or at the stop where that is warmer: what "solid" is measured against. */
   readonly solidIce_kg_kg: number
   readonly liquid: Table
@@ -212,6 +214,7 @@ const make = (
     coupling_kW_kgK: UA_W_K / 1000 / fill_kg,
     couplingRelU: Math.max(leastRelU, relU),
     UA_W_K,
+    settle_s: settlingOf(container),
     gradient: gradientOf(container, UA_W_K, area_m2(container)),
     solidIce_kg_kg: iceAt(substance, Math.max(-20, endOfFreezing_C(substance))),
     liquid,

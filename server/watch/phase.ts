@@ -51,12 +51,19 @@ const newLevel_K = 3
 const surroundingsAfter = (
   track: ItemTrack,
   estimate: Estimate,
-): { env_C: number; env_ms: number } => {
+  settle_s: number,
+): Pick<ItemTrack, 'env_C' | 'env_ms' | 'felt_C'> => {
   const now = estimate.env_C
-  if (track.env_ms < 0) return { env_C: now, env_ms: track.t_ms }
+  const { felt_C } = track
+  if (track.env_ms < 0) return { env_C: now, env_ms: track.t_ms, felt_C }
   const f = Math.exp(-(track.t_ms - track.env_ms) / 1000 / mean_s)
   const mean = f * track.env_C + (1 - f) * now
-  return { env_C: Math.abs(mean - now) > newLevel_K ? now : mean, env_ms: track.t_ms }
+  const g = Math.exp(-(track.t_ms - track.env_ms) / 1000 / settle_s)
+  return {
+    env_C: Math.abs(mean - now) > newLevel_K ? now : mean,
+    env_ms: track.t_ms,
+    felt_C: g * felt_C + (1 - g) * now,
+  }
 }
 
 /** How often the chance is reckoned on the track, ms of data time: it costs more than the rest. */
@@ -105,7 +112,8 @@ export function followed(
 ): ItemTrack {
   if (track.t_ms < 0 || track.bank.length === 0) return track
   const matter = item.matter[track.matter]!.value
-  const estimate = reckoned(plan, item, track)
+  const measured = own || ownSpeaks(plan, item, track, track.t_ms, 5)
+  const estimate = reckoned(plan, item, track, measured)
   const policy = valueAt(plan.policy, track.t_ms)
   const last = track.ice.at(-1)
   const noted =
@@ -115,8 +123,7 @@ export function followed(
           [track.t_ms, estimate.ice_kg_kg] as const,
         ]
       : track.ice
-  const measured = own || ownSpeaks(plan, item, track, track.t_ms, 5)
-  const settled = { ...track, ice: noted, ...surroundingsAfter(track, estimate) }
+  const settled = { ...track, ice: noted, ...surroundingsAfter(track, estimate, matter.settle_s) }
   const next = {
     ...settled,
     ...poisedAfter(item, settled, matter, estimate, policy, measured, unit),

@@ -74,24 +74,38 @@ const ofBranch = (
   }
 }
 
-/** The stories of a track as one estimate of the product. */
-export function reckoned(plan: Plan, item: PlannedItem, track: ItemTrack): Estimate {
+/**
+ * The stories of a track as one estimate of the product.
+ *
+ * Where no probe could show ice, the estimate is that of the product still liquid: what the hazard
+ * says stands beside it as a chance and does not blur it.
+ *
+ * @param measured  a probe touches the item
+ */
+export function reckoned(
+  plan: Plan,
+  item: PlannedItem,
+  track: ItemTrack,
+  measured: boolean,
+): Estimate {
   const matter = item.matter[track.matter]!.value
   const apart = track.fork === null ? 0 : 1 / (1 + Math.exp(-track.fork.odds))
   const all = [
     ...track.bank.map((b) => ({ b, w: Math.exp(b.w) * (1 - apart) })),
     ...(track.fork?.bank ?? []).map((b) => ({ b, w: Math.exp(b.w) * apart })),
   ].filter((x) => x.w > 1e-9)
-  const sum = all.reduce((s, x) => s + x.w, 0)
+  const turned = all.reduce((s, x) => s + (x.b.kind === 'liquid' ? 0 : x.w), 0)
+  const unseen = (x: (typeof all)[number]) => x.b.kind !== 'ice' || x.b.placedAsIce
+  const liquidOnly = !measured && track.called === null && all.some(unseen)
+  const stories = liquidOnly ? all.filter(unseen) : all
+  const sum = stories.reduce((s, x) => s + x.w, 0)
   let T_C = 0
   let second = 0
   let below = 0
   let icy = 0
-  let turned = 0
   let ice = 0
   let env_C = 0
-  let top = all[0]!
-  const ones = all.map(({ b, w }) => ({
+  const ones = stories.map(({ b, w }) => ({
     b,
     w: w / sum,
     one: ofBranch(plan, item, track, b, matter),
@@ -106,8 +120,6 @@ export function reckoned(plan: Plan, item: PlannedItem, track: ItemTrack): Estim
       icy += w
       ice += w * ice_kg_kg(matter, b.g[H]!)
     }
-    if (b.kind !== 'liquid') turned += w
-    if (w > top.w) top = { b, w }
   }
   for (const { w, one } of ones) second += w * (one.var_K2 + (one.T_C - T_C) ** 2)
   const heaviest = ones.reduce((a, b) => (b.w > a.w ? b : a))

@@ -1,4 +1,4 @@
-import { biasOf, carry, type Drive, H, leaning, sensorOf, shareOf, Δ } from './estimate.js'
+import { biasOf, carry, type Drive, H, inSlush, leaning, sensorOf, shareOf, Δ } from './estimate.js'
 import { at, correct, type Gauss, mix, varianceOfSum } from './gauss.js'
 import { heatCapacity_kJ_kgK, type Matter, temperature_C } from './matter.js'
 import type { Branch } from './state.js'
@@ -135,8 +135,9 @@ export function turnedWithin(
     const L2 = x > 1e-6 ? (1 - Math.exp(-2 * x)) / (2 * x) : 1
     const s = sensorOf(slot)
     const a = g[shareOf(slot)]!
-    const rest = (1 - a) * drive.gradientOnIce[slot]!
-    const env_C = drive.base1_C + g[Δ]!
+    const outside = drive.outside[slot]!
+    const rest = (1 - a) * (outside ? 1 : inSlush(matter, h))
+    const env_C = outside ? drive.base1_C + g[Δ]! : drive.felt_C
     const target = temperature_C(matter, true, h) * (1 - rest) + rest * env_C
     const was = from_C * a + (1 - a) * env_C
     const J = target - was

@@ -157,5 +157,6 @@ export function started(
     called: from?.called ?? null,
     exposure: from?.exposure ?? valueAt(matters, start_ms).noExposure,
     alive: from?.alive ?? 1,
+    felt_C: from?.felt_C ?? item.item.initial_C ?? air.base_C,
   }
 }

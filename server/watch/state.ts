@@ -87,6 +87,8 @@ export type ItemTrack = {
   /** Running mean of its surroundings, °C, for forecasts. */
   readonly env_C: number
   readonly env_ms: number
+  /** Surroundings as the inside of the body has felt them, °C. */
+  readonly felt_C: number
   /** Poised by the chance when it was last reckoned on the track, and when that was. */
   readonly poised: boolean
   readonly poised_ms: number
@@ -221,6 +223,7 @@ export function freshState(plan: Plan, group: Group): GroupState {
         alive: 1,
         env_C: 0,
         env_ms: -1,
+        felt_C: 0,
         poised: false,
         poised_ms: -1,
         phase: 'unknown' as const,

@@ -31,7 +31,10 @@ export const suite = (perKind: number, seed: number) => {
   let k = seed
   return placements.flatMap(([placement, withAir]) =>
     kinds.flatMap(([kind, share]) =>
-      Array.from({ length: share * perKind }, () => () => trace(k++, kind, placement, withAir)),
+      Array.from({ length: share * perKind }, () => {
+        const own = k++
+        return () => trace(own, kind, placement, withAir)
+      }),
     ),
   )
 }
