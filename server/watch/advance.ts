@@ -33,6 +33,9 @@ const ordinary_u_K = 0.15
  * spans decades, and what the probe shows must decide.
  */
 const watchedMost_h = 0.1
+/** So deep the claim doubles, and beyond it soon is as good as certain, K. */
+const deep_K = 8
+const watchedMost = (depth_K: number): number => watchedMost_h * (1 + (depth_K / deep_K) ** 4)
 /** Below this depth no fresh candidate is made: the curves lie within the noise. */
 const leastDepth_K = 0.25
 /** A switching weight is never lighter than this per step: a real jump must be able to win. */
@@ -154,7 +157,9 @@ const withBirths = (
     const perhaps_K = depth_K + Math.max(0, u_K - ordinary_u_K)
     if (perhaps_K < leastDepth_K || drive.dt_s <= 0) return [c]
     const cause_h = watched ? unknownCause(perhaps_K) : 0
-    const kinetics = watched ? Math.min(byKinetics, (watchedMost_h * drive.dt_s) / 3600) : byKinetics
+    const kinetics = watched
+      ? Math.min(byKinetics, (watchedMost(depth_K) * drive.dt_s) / 3600)
+      : byKinetics
     const chance = 1 - (1 - kinetics) * Math.exp((-cause_h * drive.dt_s) / 3600)
     const share = Math.min(0.999999, Math.max(leastShare, chance))
     // A light rival gives birth to nothing that could ever count.

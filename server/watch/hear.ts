@@ -1,8 +1,8 @@
 import { advance, unknownsOf } from './advance.js'
-import { biasOf, sensorOf, Δ } from './estimate.js'
+import { biasOf, sensorOf, shareOf, Δ } from './estimate.js'
 import { at, type Gauss } from './gauss.js'
 import { forkOdds, opensFork, returned } from './lookalikes.js'
-import { temperature_C } from './matter.js'
+import { type Matter, temperature_C } from './matter.js'
 import { type Group, type Plan, valueAt } from './plan.js'
 import {
   type Carried,
@@ -40,6 +40,26 @@ export const turnedProbability = (track: ItemTrack): number => {
 
 type Told = { readonly bank: readonly Branch[]; readonly log: number; readonly z2: number }
 
+/**
+ * Stories that foresee a reading within this of each other (nats) are equally good: so small a
+ * difference comes from how their noise is modelled, and over a thousand quiet readings it would
+ * decide.
+ */
+const indifference = 0.1
+const beyond = (nats: number): number =>
+  Math.sign(nats) * Math.max(0, Math.abs(nats) - indifference)
+
+/** Log density that the heaviest liquid story gave the reading; null where there is none. */
+const liquidLog = (
+  all: readonly Carried[],
+  told: readonly { readonly branch: Branch }[],
+): number | null => {
+  let best = -1
+  for (const [i, c] of all.entries())
+    if (c.branch.kind !== 'ice' && (best < 0 || c.branch.w > all[best]!.branch.w)) best = i
+  return best < 0 ? null : told[best]!.branch.w - all[best]!.branch.w
+}
+
 /** A bank that has seen a reading, the log density it gave it, and the best story's z². */
 const tell = (
   all: readonly Carried[],
@@ -58,11 +78,18 @@ const tell = (
     stirred = Math.max(stirred, share * Math.exp(c.branch.w))
     return { branch, z2: calm.z * calm.z * (1 - share) + share }
   })
-  const log = sumLogs(told.map((x) => x.branch.w))
-  const heaviest = told.reduce((a, b) => (b.branch.w > a.branch.w ? b : a))
+  const reference = liquidLog(all, told)
+  const even = told.map((x, i) => {
+    if (reference === null || x.branch.kind !== 'ice') return x
+    const before = all[i]!.branch.w
+    const gain = x.branch.w - before
+    return { ...x, branch: { ...x.branch, w: before + reference + beyond(gain - reference) } }
+  })
+  const log = sumLogs(even.map((x) => x.branch.w))
+  const heaviest = even.reduce((a, b) => (b.branch.w > a.branch.w ? b : a))
   // What stirs the liquid story stirs the others too, so that a poor UA never looks like ice.
   const extra = 0.3 * stirred * jump.size_K ** 2
-  const bank = told.map(({ branch }) => {
+  const bank = even.map(({ branch }) => {
     if (branch.kind !== 'ice' || extra < 1e-6) return branch
     const g = [...branch.g]
     g[at(n, Δ, Δ)] = g[at(n, Δ, Δ)]! + extra
@@ -80,28 +107,62 @@ const expectation = (all: readonly Carried[], n: number, sight: Sight) => {
 
 /** Readings on which ice is at least this probable count towards a call. */
 const probable = 0.95
-const certain = 0.999
+const certain = 0.9999
 const needed = 2
+/** A reading so near to where a settled probe would stand on the plateau speaks for itself. */
+const onPlateau_z = 2.5
+/** A rise must have come to its end: so long, in lags of the probe, must it look like ice. */
+const wait_T90 = 1.5
+const waitRange_s: readonly [number, number] = [10, 300]
 
-/** Does what is known now amount to calling it turned? Once called it stays. */
-const calledBy = (track: ItemTrack, t_ms: number, trusted: boolean): Partial<ItemTrack> => {
+/**
+ * Does what is known now amount to calling it turned? Once called it stays.
+ *
+ * @param settled_z  how far the reading is from the plateau of the heaviest story with ice
+ */
+const calledBy = (
+  track: ItemTrack,
+  t_ms: number,
+  trusted: boolean,
+  T90_s: number,
+  settled_z: number,
+): Partial<ItemTrack> => {
   const p = turnedProbability(track)
-  const strong = !trusted ? track.strong : p >= probable ? track.strong + 1 : 0
-  if (track.called !== null || !trusted) return { strong }
-  if (p >= certain || strong >= needed) {
+  const isStrong = trusted && p >= probable
+  const strong = !trusted ? track.strong : isStrong ? track.strong + 1 : 0
+  const strong_ms = isStrong && track.strong > 0 ? track.strong_ms : t_ms
+  if (track.called !== null || !isStrong) return { strong, strong_ms }
+  const [least, most] = waitRange_s
+  const wait_ms = 1000 * Math.min(most, Math.max(least, wait_T90 * T90_s))
+  const atOnce = p >= certain && settled_z < onPlateau_z
+  if (atOnce || (strong >= needed && t_ms - strong_ms >= wait_ms)) {
     const iced = track.bank.filter((b) => b.kind !== 'liquid')
     const placed = iced.reduce((s, b) => s + (b.placedAsIce ? Math.exp(b.w) : 0), 0)
     const placedAsIce = placed > 0.5
-    return { strong, called: { at_ms: t_ms, reckoned: placedAsIce, placedAsIce } }
+    return { strong, strong_ms, called: { at_ms: t_ms, reckoned: placedAsIce, placedAsIce } }
   }
-  return { strong }
+  return { strong, strong_ms }
+}
+
+/** How far a reading is from where a settled probe would stand on the heaviest story with ice. */
+const fromPlateau_z = (track: ItemTrack, matter: Matter, sight: Sight, n: number): number => {
+  const iced = track.bank.filter((b) => b.kind === 'ice')
+  if (iced.length === 0) return Number.POSITIVE_INFINITY
+  const top = iced.reduce((a, b) => (b.w > a.w ? b : a))
+  const a = top.g[shareOf(sight.slot)]!
+  const T = temperature_C(matter, true, top.g[0]!)
+  const env_C = track.base_C + top.g[Δ]!
+  const expected = T + (1 - a) * (env_C - T) + top.g[biasOf(sight.slot)]!
+  const b = at(n, biasOf(sight.slot), biasOf(sight.slot))
+  return Math.abs(sight.y_C - expected) / Math.sqrt(sight.R_K2 + top.g[b]! + 0.05 ** 2)
 }
 
 /** Once a turn is called the liquid story keeps no more than this: the verdict stands by its word. */
 const doubtKept = Math.log(0.05)
 
 const committed = (track: ItemTrack, n: number): readonly Branch[] => {
-  if (track.called === null || track.called.reckoned) return track.bank
+  if (track.called === null || (track.called.reckoned && !track.called.placedAsIce))
+    return track.bank
   const over = track.bank.some((b) => b.kind === 'liquid' && b.w > doubtKept)
   const iced = track.bank.some((b) => b.kind !== 'liquid')
   if (!over || !iced) return track.bank
@@ -127,7 +188,10 @@ const withSlot = (track: ItemTrack, k: number, slot: SlotTrack): ItemTrack => ({
 /** The probe gave back what it was lent: its story without the readings since is the true one. */
 const apart = (track: ItemTrack, fork: Fork, why: SlotTrack['apartWhy']): ItemTrack => {
   const slot = track.slots[fork.slot]!
-  return withSlot({ ...track, bank: fork.bank, fork: null, strong: 0 }, fork.slot, {
+  // A turn that was called on readings which were not the item's own is taken back with them.
+  const own = track.called !== null && track.called.at_ms < fork.since_ms
+  const called = own || track.called?.reckoned ? track.called : null
+  return withSlot({ ...track, called, bank: fork.bank, fork: null, strong: 0 }, fork.slot, {
     ...slot,
     trusted_ms: fork.trusted_ms,
     trusted_C: fork.trusted_C,
@@ -203,11 +267,24 @@ export function hearOwn(
   }
   if (last.apart_ms >= 0 && last.apartWhy === 'left') {
     const back = returned(last, y_C, foreseen)
-    if (back.again) track = withSlot(track, k, { ...last, apart_ms: -1, apartWhy: 'none', back: 0 })
-    else return withSlot(thinOnly(track, n), k, { ...heard, level_C: y_C, back: back.count })
+    if (back.again) {
+      // The sensor comes from elsewhere: it has its lag before it and says nothing of the item yet.
+      const bank = track.bank.map((b) => ({ ...b, g: sensorAt(b.g, n, k, y_C, R_K2) }))
+      const slot = {
+        ...heard,
+        trusted_ms: t_ms,
+        trusted_C: y_C,
+        apart_ms: -1,
+        apartWhy: 'none' as const,
+        back: 0,
+      }
+      return withSlot(thinOnly({ ...track, bank }, n), k, slot)
+    }
+    return withSlot(thinOnly(track, n), k, { ...heard, level_C: y_C, back: back.count })
   }
 
   const unit = plan.units[track.unit]!
+  const matter = item.matter[track.matter]!.value
   const jump = jumpOf(unit, t_ms, track.based, moved.drive.dt_s)
   const told = tell(all, n, sight, track.base_C, jump)
   const scale = Math.min(
@@ -233,7 +310,10 @@ export function hearOwn(
       const better = odds > 0
       const bank = better ? inFork.bank : told.bank
       track = withSlot({ ...track, bank, fork: null }, k, trusting)
-      return { ...track, ...calledBy(track, t_ms, true) }
+      return {
+        ...track,
+        ...calledBy(track, t_ms, true, probe.given.T90_s, Number.POSITIVE_INFINITY),
+      }
     }
     fork = odds < -14 ? null : { ...fork, odds, level_C: y_C }
     if (fork !== null && odds > 9)
@@ -273,11 +353,26 @@ export function hearOwn(
   )
   track = { ...track, bank: committed(track, n) }
   const doubtful = track.fork !== null && track.fork.odds > 0
-  return { ...track, ...calledBy(track, t_ms, !doubtful && kind !== 'sibling') }
+  return {
+    ...track,
+    ...calledBy(
+      track,
+      t_ms,
+      !doubtful && kind !== 'sibling',
+      probe.given.T90_s,
+      fromPlateau_z(track, matter, sight, n),
+    ),
+  }
 }
 
 /** A sensor known to stand at a reading, whatever it was thought to: nothing else is learned. */
-const sensorAt = (was: readonly number[], n: number, k: number, y_C: number, R_K2: number): Gauss => {
+const sensorAt = (
+  was: readonly number[],
+  n: number,
+  k: number,
+  y_C: number,
+  R_K2: number,
+): Gauss => {
   const g: Gauss = [...was]
   const s = sensorOf(k)
   for (let j = 0; j < n; j++) g[at(n, s, j)] = j === s ? R_K2 : 0

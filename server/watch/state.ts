@@ -80,6 +80,7 @@ export type ItemTrack = {
   readonly called: Called | null
   /** Trusted readings in a row on which ice was probable. */
   readonly strong: number
+  readonly strong_ms: number
   /** Exposure while liquid, for each exponent of the nucleation grid. */
   readonly exposure: readonly number[]
   /** Chance of having stayed liquid through that exposure. */
@@ -219,6 +220,7 @@ export function freshState(plan: Plan, group: Group): GroupState {
         slots: item.slots.map(() => emptySlot),
         called: null,
         strong: 0,
+        strong_ms: -1,
         exposure: [],
         alive: 1,
         env_C: 0,
