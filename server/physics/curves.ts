@@ -68,7 +68,7 @@ export function liquidOsmolality_osmol_kg(s: Substance, t_C: number): number {
   const t = within_C(t_C, coldestFrozen_C, warmest_C, 'the osmolality of a product')
   return t >= s.freezingPoint_C
     ? s.osmolality_osmol_kg
-    : osmolalityAt(Math.max(t, endOfFreezing_C(s)))
+    : Math.max(s.osmolality_osmol_kg, osmolalityAt(Math.max(t, endOfFreezing_C(s))))
 }
 
 /**
