@@ -83,7 +83,7 @@ const Figures = ({ item }: { item: ItemView }) => {
   const f = verdict.ifItFreezes
   if (f === null) return <p class="pad">{say('freezes.unknown')}</p>
   const rises = (r: readonly [number, number, number] | null) =>
-    r === null ? say('unknown') : `${interval(r[0], r[2], r[2] < 1 ? 2 : 1)} K`
+    r === null ? say('frame.unknown') : `${interval(r[0], r[2], r[2] < 1 ? 2 : 1)} K`
   return (
     <dl class="out">
       <Row

@@ -21,7 +21,7 @@ export const ReadingLimits = ({ item }: { item: ItemView }) => {
         <div>
           <dt>{say('limits.reading')}</dt>
           <dd>
-            {limits.reading_C === null ? say('unknown') : celsius(limits.reading_C, 2)}
+            {limits.reading_C === null ? say('frame.unknown') : celsius(limits.reading_C, 2)}
             {limits.probe !== null && <small>{say('limits.probe', { probe: limits.probe })}</small>}
           </dd>
         </div>

@@ -160,7 +160,7 @@ const Sheet = ({ item, known }: { item: ItemView; known: Picture }) => {
         <IfItFreezes item={item} known={known} asked={curves} />
         <Trail asked={trail} at={at} policy={policy} item={item} />
       </div>
-      <p class="statement">{say('statement')}</p>
+      <p class="statement">{say('frame.statement')}</p>
     </div>
   )
 }

@@ -25,7 +25,7 @@ export const More = () => (
         <Key />
       </div>
     </section>
-    <p class="statement">{say('statement')}</p>
+    <p class="statement">{say('frame.statement')}</p>
     <p class="statement">{say('more.model', { model: picture.value?.site.model ?? '' })}</p>
   </div>
 )

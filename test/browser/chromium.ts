@@ -3,6 +3,7 @@ import { existsSync, mkdtempSync, readFileSync, renameSync, rmSync } from 'node:
 import { tmpdir, userInfo } from 'node:os'
 import { join } from 'node:path'
 import { type Browser, chromium } from 'playwright-core'
+import { rootFolder } from './root.js'
 
 /** Nothing of this may call out: the tests need no network. */
 const flags = [
@@ -23,8 +24,7 @@ const wantsPacked = (): boolean => process.env.HOARLINE_BROWSER === 'packed'
 
 /** Where the packed browser lies once unpacked; its version is in the name, so a new one is unpacked. */
 const unpackedDir = (): string => {
-  const root = new URL('../..', import.meta.url)
-  const manifest = new URL('node_modules/@sparticuz/chromium/package.json', root)
+  const manifest = join(rootFolder(), 'node_modules', '@sparticuz', 'chromium', 'package.json')
   const { version } = JSON.parse(readFileSync(manifest, 'utf8')) as { version: string }
   return join(tmpdir(), `hoarline-chromium-${version}-${userInfo().uid}`)
 }
@@ -42,7 +42,7 @@ const unpack = (): string => {
   const staging = mkdtempSync(join(tmpdir(), 'hoarline-unpack-'))
   const program = "(await import('@sparticuz/chromium')).default.executablePath()"
   execFileSync(process.execPath, ['--input-type=module', '-e', `await ${program}`], {
-    cwd: new URL('../..', import.meta.url).pathname,
+    cwd: rootFolder(),
     env: { ...process.env, TMPDIR: staging, AWS_LAMBDA_JS_RUNTIME: 'nodejs20.x' },
     stdio: ['ignore', 'ignore', 'inherit'],
   })

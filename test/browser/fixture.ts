@@ -1,6 +1,7 @@
 import { readFileSync } from 'node:fs'
 import { createServer } from 'node:http'
 import type { AddressInfo } from 'node:net'
+import { join } from 'node:path'
 import type {
   CautionRow,
   Changed,
@@ -30,6 +31,7 @@ import {
   seeded,
 } from './fixturePhysics.js'
 import { probes, type Spec, type UnitSpec, units } from './fixtureSite.js'
+import { rootFolder } from './root.js'
 
 /** 03:25:04 at the invented site. */
 export const start_ms = Date.parse('2026-01-05T02:25:04Z')
@@ -507,7 +509,7 @@ const refused: readonly RefusedView[] = [
 
 const cautionTable = (): CautionRow[] =>
   JSON.parse(
-    readFileSync(new URL('../../config/library/cautions.json', import.meta.url), 'utf8'),
+    readFileSync(join(rootFolder(), 'config', 'library', 'cautions.json'), 'utf8'),
   ) as CautionRow[]
 
 export type FixtureOptions = {
@@ -633,7 +635,7 @@ export const startFixture = async (options: FixtureOptions = {}): Promise<Fixtur
       },
       health: () => ({ live: true, ready: true, outage: null, behind_s: 0 }),
     },
-    new URL('../../dist/client', import.meta.url).pathname,
+    join(rootFolder(), 'dist', 'client'),
     { error: (context, text) => console.error(text, context) },
   )
   const server = createServer(app)
