@@ -155,11 +155,16 @@ const Empty = ({ known }: { known: Picture }) => {
   )
 }
 
+/** Nobody reads more at once, and drawing hundreds twice a second would cost the chart its pace. */
+const entriesAtATime = 20
+
 /** Which stored items need a hand, in which order, and what to do and not to do there. */
 export const HandsNeeded = () => {
   const known = picture.value
+  const upTo = useSignal(entriesAtATime)
   if (known === null) return null
   const entries = hands.value
+  const shown = entries.slice(0, upTo.value)
   const near = withinUncertainty(known.items, known.site.policy)
   return (
     <section class="hands" aria-label={say('hands.title')}>
@@ -168,9 +173,14 @@ export const HandsNeeded = () => {
         {entries.length > 0 && <small>{say('hands.causes', { count: entries.length })}</small>}
       </header>
       {entries.length === 0 && <Empty known={known} />}
-      {entries.map((entry, i) => (
+      {shown.map((entry, i) => (
         <Hand key={entry.key} entry={entry} first={i === 0} known={known} />
       ))}
+      {shown.length < entries.length && (
+        <button type="button" class="plain rest" onClick={() => (upTo.value += entriesAtATime)}>
+          {say('hands.moreEntries', { count: entries.length - shown.length })}
+        </button>
+      )}
       {near > 0 && <p class="within">{say('hands.within', { count: near })}</p>}
       {entries.length > 0 && (
         <p class="within">{say('hands.notAssessable', { count: notAssessable(known.items) })}</p>
