@@ -10,7 +10,7 @@ import { parse } from '../config/schema/parse.js'
 import { siteRefusals } from '../config/schema/readSite.js'
 import { Refusal } from '../config/schema/refusal.js'
 import { SiteFile } from '../config/schema/site.js'
-import { modelVersion } from '../config/schema/verdict.js'
+import { type Judgement, modelVersion } from '../config/schema/verdict.js'
 import { wordsOf } from '../config/words/read.js'
 import { apiApp, isLoopbackHost } from './api/app.js'
 import { itemReadings, itemTrail, refusedView } from './api/items.js'
@@ -33,6 +33,9 @@ import type { FromWatch } from './watching.js'
 
 /** How often the watch is told the time; half of it is the most that a change waits for its push. */
 const tick_ms = 250
+
+/** Verdict changes held while the disk is away; a restart finds them again from the log. */
+const mostUnsaved = 10_000
 
 export type Program = {
   /** Address of the pages: http://127.0.0.1:8080 */
@@ -124,8 +127,10 @@ export const startProgram = async (settings: Settings): Promise<Program> => {
     const clock = siteClock(demo?.clockMap ?? null)
     const brokers = new Map<string, OutsideStatus>()
     const mappings = mappingsOf(site)
-    let newest_ms = 0
-    let judged_ms = 0
+    /** Receipt times of readings on their way through the watch, oldest first. */
+    const onTheWay: { offset: number; receivedAt_ms: number }[] = []
+    /** Verdict changes that the disk would not take; estimates and states come anew by themselves. */
+    let unsaved: readonly Judgement[] = []
     const notEvaluated = new Set<string>()
 
     const intake = (): Intake => {
@@ -138,7 +143,14 @@ export const startProgram = async (settings: Settings): Promise<Program> => {
         refused,
         bad,
         outage: log.outage()?.message ?? away?.why ?? null,
-        behind_s: Math.max(0, Math.round((newest_ms - judged_ms) / 1000)),
+        behind_s: Math.max(
+          0,
+          Math.round(
+            (clock.now_ms() - (onTheWay[0]?.receivedAt_ms ?? clock.now_ms())) /
+              1000 /
+              (clock.map()?.speed ?? 1),
+          ),
+        ),
         notEvaluated: [...notEvaluated],
       }
     }
@@ -167,14 +179,21 @@ export const startProgram = async (settings: Settings): Promise<Program> => {
     }
     const board = boardOf(site, { siteView, intake, verdict: (j) => verdictOf(j, say) })
 
+    const save = async (found: Extract<FromWatch, { kind: 'save' }>) => {
+      const trail = [...unsaved, ...found.trail]
+      unsaved = []
+      try {
+        await log.apply({ trail, estimates: found.estimates, snapshots: found.snapshots })
+      } catch (error) {
+        unsaved = [...trail, ...unsaved].slice(-mostUnsaved)
+        logger.warn({ err: error }, 'what the watch found is not saved yet')
+      }
+    }
     const onWatch = (message: FromWatch) => {
       if (message.kind === 'judged') board.judged(message.items)
-      else if (message.kind === 'save')
-        // A watch that cannot save goes on judging; the log is the truth and is replayed.
-        log
-          .apply(message)
-          .catch((error) => logger.warn({ err: error }, 'what the watch found is not saved yet'))
-      else if (message.kind === 'done') judged_ms = newest_ms
+      else if (message.kind === 'save') void save(message)
+      else if (message.kind === 'done')
+        while (onTheWay[0] !== undefined && onTheWay[0].offset <= message.offset) onTheWay.shift()
       else if (message.kind === 'parked') {
         for (const item of message.items) notEvaluated.add(item)
         logger.error({ cause: message.cause, items: message.items }, 'not evaluated')
@@ -197,7 +216,13 @@ export const startProgram = async (settings: Settings): Promise<Program> => {
         })),
         refused,
       )
-      newest_ms = Math.max(newest_ms, receivedAt_ms)
+      const offset = logged.reduce(
+        (most, r) => Math.max(most, r.kept === 'duplicate' ? 0 : r.offset),
+        0,
+      )
+      const last = onTheWay.at(-1)
+      if (offset > 0 && (last === undefined || receivedAt_ms - last.receivedAt_ms >= tick_ms))
+        onTheWay.push({ offset, receivedAt_ms })
       board.hear(logged)
       watch.hear(logged)
     }

@@ -13,7 +13,7 @@ import { judgementOf } from './watch/judgement.js'
 import { outlookOf, tintsOf } from './watch/outlook.js'
 import { type Group, planOf } from './watch/plan.js'
 import { freshState, type GroupState } from './watch/state.js'
-import { type Input, step } from './watch/step.js'
+import { type Input, replayed, step } from './watch/step.js'
 import type { FromWatch, ToWatch, WatchStart } from './watching.js'
 
 /**
@@ -51,18 +51,22 @@ const parked = new Set<string>()
 const lastJudged = new Map<number, Judgement>()
 const news = new Set<number>()
 const unsaved = new Set<string>()
+const late = new Set<Group>()
 let trail: Judgement[] = []
 let offset: Offset = 0
 let savedAt_ms = 0
 let next = 0
 
 /** One group's step. A fault of ours parks the group: never guess on (style.md §4). */
-const stepped = (group: Group, input: Input): void => {
+const stepped = (group: Group, input: Input | 'anew'): void => {
   if (parked.has(group.id)) return
   try {
     const state = states.get(group.id) ?? freshState(plan, group)
-    const { state: after, events } = step(state, input, plan)
+    const { state: after, events } =
+      input === 'anew' ? madeAnew(group, state) : step(state, input, plan)
     states.set(group.id, after)
+    // Once for all that came late together, at the next tick: a backlog must not cost its square.
+    if (after.needsReplayFrom_ms !== null) late.add(group)
     unsaved.add(group.id)
     for (const event of events) {
       if (event.kind !== 'changed') continue
@@ -72,7 +76,6 @@ const stepped = (group: Group, input: Input): void => {
       trail.push(event.judgement)
       news.add(index)
     }
-    if (after.needsReplayFrom_ms !== null && input.kind === 'readings') replayGroup(group)
   } catch (error) {
     parked.add(group.id)
     const cause = error instanceof Error ? (error.stack ?? error.message) : String(error)
@@ -81,7 +84,7 @@ const stepped = (group: Group, input: Input): void => {
 }
 
 /** Readings in order of arrival, each at the clock at which it came, as a replay takes them. */
-const feed = (readings: readonly LoggedReading[], only: Group | null): void => {
+const feed = (readings: readonly LoggedReading[]): void => {
   let batch: LoggedReading[] = []
   let group: Group | null = null
   const flush = () => {
@@ -92,7 +95,7 @@ const feed = (readings: readonly LoggedReading[], only: Group | null): void => {
   }
   for (const reading of readings) {
     const of = plan.groupOfProbe(reading.probe)
-    if (of === null || (only !== null && of.id !== only.id)) continue
+    if (of === null) continue
     const first = batch[0]
     if (first !== undefined && (of !== group || reading.receivedAt_ms !== first.receivedAt_ms))
       flush()
@@ -103,22 +106,19 @@ const feed = (readings: readonly LoggedReading[], only: Group | null): void => {
   flush()
 }
 
-/** A reading older than what a state remembers: the group is walked through again from the log. */
-const replayGroup = (group: Group): void => {
-  states.set(group.id, {
-    ...freshState(plan, group),
-    announced: states.get(group.id)?.announced ?? [],
-  })
+/** A reading came that is older than what a state remembers: the group is made anew from the log. */
+const madeAnew = (group: Group, state: GroupState): ReturnType<typeof replayed> => {
+  const readings: LoggedReading[] = []
   for (let from = 0; ; ) {
     const rows = reader.readAll(from, page)
     const last = rows.at(-1)
-    if (last === undefined || last.offset > offset) break
-    feed(
-      rows.filter((r) => r.offset <= offset),
-      group,
-    )
+    if (last === undefined) break
+    for (const row of rows)
+      if (plan.groupOfProbe(row.probe)?.id === group.id && row.receivedAt_ms <= state.clock_ms)
+        readings.push(row)
     from = last.offset
   }
+  return replayed(state, readings, plan)
 }
 
 /** Everything on disk after what has been judged, up to an offset. */
@@ -127,7 +127,7 @@ const catchUp = (upTo: Offset): void => {
     const rows = reader.readAll(offset, page)
     const last = rows.at(-1)
     if (last === undefined) break
-    feed(rows, null)
+    feed(rows)
     offset = last.offset
     post({ kind: 'done', offset })
   }
@@ -203,6 +203,10 @@ const judgedAt = (index: number, now_ms: number): Judged | null => {
 /** Timers due by now fire; what has news, and some of the rest, is made anew for the screen. */
 const tick = (now_ms: number): void => {
   for (const group of plan.groups) stepped(group, { kind: 'clock', now_ms })
+  for (const group of [...late]) {
+    late.delete(group)
+    stepped(group, 'anew')
+  }
   const rest = Math.min(shownPerTick, plan.items.length)
   for (let i = 0; i < rest; i++) news.add((next + i) % plan.items.length)
   next = (next + rest) % Math.max(1, plan.items.length)
@@ -246,7 +250,7 @@ port.on('message', (message: ToWatch) => {
     case 'readings': {
       if (message.after > offset) catchUp(message.after)
       const fresh = message.readings.filter((r) => r.offset > offset)
-      feed(fresh, null)
+      feed(fresh)
       offset = fresh.reduce((most, r) => Math.max(most, r.offset), offset)
       return post({ kind: 'done', offset })
     }
