@@ -1,7 +1,7 @@
 import { advance, unknownsOf } from './advance.js'
 import { biasOf, sensorOf, shareOf, Δ } from './estimate.js'
 import { at, type Gauss } from './gauss.js'
-import { forkOdds, opensFork, returned } from './lookalikes.js'
+import { forkOdds, gentleAfter, opensFork, returned, wronglyAside } from './lookalikes.js'
 import { type Matter, temperature_C } from './matter.js'
 import { type Group, type Plan, valueAt } from './plan.js'
 import {
@@ -14,6 +14,7 @@ import {
   thinned,
   weigh,
 } from './rivals.js'
+import { bankOf } from './start.js'
 import type { Branch, Core, Fork, ItemTrack, SlotTrack } from './state.js'
 import { jumpOf } from './surroundings.js'
 import { isStuck, looksFahrenheit, noiseAfter, runOf } from './trust.js'
@@ -180,6 +181,14 @@ const raised = (bank: readonly Branch[]): Branch[] => {
   return bank.map((b) => (b.kind === 'liquid' ? b : { ...b, w: b.w - ice + rest }))
 }
 
+/** Lags after which a probe stands where it went. */
+const settling_T90 = 3
+
+/** Odds (logs) from which the probe is taken to have left its item. */
+const apartFrom = 5
+/** Odds below which it is taken to have read its item all along. */
+const notApart = -7
+
 const withSlot = (track: ItemTrack, k: number, slot: SlotTrack): ItemTrack => ({
   ...track,
   slots: track.slots.map((s, i) => (i === k ? slot : s)),
@@ -198,6 +207,8 @@ const apart = (track: ItemTrack, fork: Fork, why: SlotTrack['apartWhy']): ItemTr
     apart_ms: fork.since_ms,
     apartWhy: why,
     level_C: fork.level_C,
+    aside_C: fork.level_C,
+    gentle: 0,
     back: 0,
   })
 }
@@ -280,7 +291,32 @@ export function hearOwn(
       }
       return withSlot(thinOnly({ ...track, bank }, n), k, slot)
     }
-    return withSlot(thinOnly(track, n), k, { ...heard, level_C: y_C, back: back.count })
+    // While its own lag still carries it to wherever it went, it shows nothing yet.
+    const settling = t_ms - last.apart_ms < settling_T90 * probe.given.T90_s * 1000
+    const gentle = settling ? 0 : gentleAfter(last, y_C)
+    const aside_C = settling ? y_C : last.aside_C
+    if (wronglyAside(gentle, last, y_C)) {
+      const ice = track.called === null ? null : 0.95
+      const seenNow = { T_C: y_C, u_K: 0.3 + probe.given.accuracy_K / 2, ice }
+      const bank = bankOf(plan, item, t_ms, track.based, seenNow)
+      const slot = {
+        ...heard,
+        trusted_ms: t_ms,
+        trusted_C: y_C,
+        apart_ms: -1,
+        apartWhy: 'none' as const,
+        back: 0,
+        gentle: 0,
+      }
+      return withSlot({ ...track, bank, fork: null, strong: 0 }, k, slot)
+    }
+    return withSlot(thinOnly(track, n), k, {
+      ...heard,
+      level_C: y_C,
+      aside_C,
+      back: back.count,
+      gentle,
+    })
   }
 
   const unit = plan.units[track.unit]!
@@ -315,8 +351,8 @@ export function hearOwn(
         ...calledBy(track, t_ms, true, probe.given.T90_s, Number.POSITIVE_INFINITY),
       }
     }
-    fork = odds < -14 ? null : { ...fork, odds, level_C: y_C }
-    if (fork !== null && odds > 9)
+    fork = odds < notApart ? null : { ...fork, odds, level_C: y_C }
+    if (fork !== null && odds > apartFrom)
       return apart(
         withSlot(thinOnly(track, n), k, heard),
         { ...fork, bank: thinned(forkBank, n) },
@@ -328,7 +364,13 @@ export function hearOwn(
     fork = { ...fork, odds: fork.odds + inFork.log - told.log }
     forkBank = [...inFork.bank]
   } else if (kind !== 'sibling') {
-    const odds = opensFork(told.log, y_C, moved.drive.dt_s, track.based ? track.base_C : null)
+    const odds = opensFork(
+      told.log,
+      foreseen.innovation,
+      y_C,
+      moved.drive.dt_s,
+      track.based ? track.base_C : null,
+    )
     if (odds !== null) {
       fork = {
         slot: k,
@@ -353,7 +395,7 @@ export function hearOwn(
   )
   track = { ...track, bank: committed(track, n) }
   const doubtful = track.fork !== null && track.fork.odds > 0
-  return {
+  const next: ItemTrack = {
     ...track,
     ...calledBy(
       track,
@@ -363,6 +405,9 @@ export function hearOwn(
       fromPlateau_z(track, matter, sight, n),
     ),
   }
+  // The doubt has been weighed in the call; it must not come back on another occasion.
+  const justCalled = next.called !== null && track.called === null
+  return justCalled ? { ...next, fork: null } : next
 }
 
 /** A sensor known to stand at a reading, whatever it was thought to: nothing else is learned. */

@@ -178,36 +178,49 @@ const frontShare = 0.25
 /** Ice is nowhere as even as a model of it, K [common practice]. */
 const slush_K = 0.08
 
-/** Variance of the reading as this branch sees it: more in the first moments of ice. */
-const varianceOn = (b: Branch, sight: Sight): number => {
-  if (b.kind !== 'ice' || b.placedAsIce) return sight.R_K2
+/** Variance that the spread of ice adds to a reading, K²; 0 where the ice is old or there is none. */
+const frontOn = (b: Branch, sight: Sight): number => {
+  if (b.kind !== 'ice' || b.placedAsIce) return 0
   const age_s = Math.max(0, (sight.t_ms - b.to_ms) / 1000)
-  const front_K = frontShare * b.jump_K * Math.exp(-age_s / front_s)
-  return sight.R_K2 + front_K * front_K + slush_K * slush_K
+  return (frontShare * b.jump_K * Math.exp(-age_s / front_s)) ** 2
 }
 
 export type Weighed = {
   readonly z: number
   readonly log: number
   readonly S: number
+  readonly R_K2: number
   readonly innovation: number
 }
 
-/** How well a branch foresaw a reading. */
+/**
+ * How well a branch foresaw a reading. Just after a turn the probe may stand in the ice already or
+ * still beside it: either is as likely as the other.
+ */
 export function weigh(b: Branch, n: number, sight: Sight): Weighed {
   const s = sensorOf(sight.slot)
   const bias = biasOf(sight.slot)
-  const S = varianceOfSum(b.g, n, s, bias) + varianceOn(b, sight)
+  const slush2 = b.kind === 'ice' && !b.placedAsIce ? slush_K * slush_K : 0
+  const R = sight.R_K2 + slush2
+  const S = varianceOfSum(b.g, n, s, bias) + R
   const innovation = sight.y_C - b.g[s]! - b.g[bias]!
   const z2 = (innovation * innovation) / S
-  return { z: Math.sqrt(z2), log: logDensity(z2, S), S, innovation }
+  const there: Weighed = { z: Math.sqrt(z2), log: logDensity(z2, S), S, R_K2: R, innovation }
+  const front2 = frontOn(b, sight)
+  if (front2 < 1e-4) return there
+  const wide2 = (innovation * innovation) / (S + front2)
+  const beside = logDensity(wide2, S + front2)
+  const log = sumLogs([there.log, beside]) - Math.LN2
+  return there.log > beside
+    ? { ...there, log }
+    : { z: Math.sqrt(wide2), log, S: S + front2, R_K2: R + front2, innovation }
 }
 
 /** A branch that has seen a reading; a far one moves it less (Student's t as a scaled Gaussian). */
 export function seen(b: Branch, n: number, sight: Sight, by: Weighed): Branch {
   const g: Gauss = [...b.g]
   const trust = Math.min(1, (ν + 1) / (ν + by.z * by.z))
-  const S = by.S + varianceOn(b, sight) * (1 / trust - 1)
+  const S = by.S + by.R_K2 * (1 / trust - 1)
   correct(g, n, sensorOf(sight.slot), biasOf(sight.slot), by.innovation, S)
   return { ...b, g, w: b.w + by.log }
 }

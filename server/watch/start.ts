@@ -51,15 +51,25 @@ export const meantFrozen = (item: PlannedItem, t_ms: number): boolean => {
   )
 }
 
-/** The item's own start, before it was ever measured: temperature, and ice where it is meant. */
-const bankOf = (plan: Plan, item: PlannedItem, start_ms: number, based: boolean): Branch[] => {
+/**
+ * The item's own start: temperature, and ice where it is meant.
+ *
+ * @param seen  a reading to start from; null for what the site file says
+ */
+export const bankOf = (
+  plan: Plan,
+  item: PlannedItem,
+  start_ms: number,
+  based: boolean,
+  seen: { readonly T_C: number; readonly u_K: number; readonly ice: number | null } | null,
+): Branch[] => {
   const matter = valueAt(item.matter, start_ms)
   const product = valueAt(item.product, start_ms)
   const unit = valueAt(plan.units[valueAt(item.places, start_ms)]!.given, start_ms)
   const label = product.label_C
-  const given = item.item.initial_C
+  const given = seen?.T_C ?? item.item.initial_C
   const T_C = given ?? unit.setPoint_C ?? (label === undefined ? 5 : (label[0] + label[1]) / 2)
-  const u_K = item.item.initial_u_K ?? (given === undefined ? 10 : 1)
+  const u_K = seen?.u_K ?? item.item.initial_u_K ?? (given === undefined ? 10 : 1)
   const branch = (kind: Branch['kind'], share: number): Branch => {
     const onIce = kind === 'ice'
     const T = onIce ? Math.min(T_C, matter.freezing_C - 0.05) : T_C
@@ -88,15 +98,19 @@ const bankOf = (plan: Plan, item: PlannedItem, start_ms: number, based: boolean)
   }
   const depth = (matter.freezing_C - T_C) / Math.hypot(u_K, matter.uFreezing_K, 0.05)
   if (depth < 0.5) return [branch('liquid', 1)]
-  const ice = meantFrozen(item, start_ms)
-    ? depth > 2
-      ? meantAsIce
-      : 0.5
-    : item.item.previouslyFrozen
-      ? 0.2
-      : product.harm === 'freezing'
-        ? placedAsIce.freezing
-        : placedAsIce.other
+  const known = seen?.ice ?? null
+  const ice =
+    known !== null
+      ? known
+      : meantFrozen(item, start_ms)
+        ? depth > 2
+          ? meantAsIce
+          : 0.5
+        : item.item.previouslyFrozen
+          ? 0.2
+          : product.harm === 'freezing'
+            ? placedAsIce.freezing
+            : placedAsIce.other
   return [branch('liquid', 1 - ice), branch('ice', ice)]
 }
 
@@ -152,7 +166,7 @@ export function started(
     matter,
     bank:
       from === null
-        ? bankOf(plan, item, start_ms, air.based)
+        ? bankOf(plan, item, start_ms, air.based, null)
         : inherited(plan, item, start_ms, from),
     called: from?.called ?? null,
     exposure: from?.exposure ?? valueAt(matters, start_ms).noExposure,

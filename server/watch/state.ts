@@ -41,6 +41,9 @@ export type SlotTrack = {
   readonly apart_ms: number
   readonly apartWhy: 'none' | 'left' | 'stuck' | 'fahrenheit'
   readonly level_C: number
+  /** Where it stood when it was set aside, and how many gentle steps it has made since. */
+  readonly aside_C: number
+  readonly gentle: number
   readonly back: number
 }
 
@@ -200,6 +203,8 @@ export const emptySlot: SlotTrack = {
   apart_ms: -1,
   apartWhy: 'none',
   level_C: 0,
+  aside_C: 0,
+  gentle: 0,
   back: 0,
 }
 
