@@ -126,6 +126,7 @@ export const ifLeft = (entry: Entry, site: Site, atMost: number): string =>
     .map((needy) => leftSentence(needy, site))
     .filter((text) => text !== null)
     .slice(0, atMost)
+    .map((text) => text.charAt(0).toUpperCase() + text.slice(1))
     .join(' ')
 
 /** What is read at a glance is short; the Item sheet has every reason. */

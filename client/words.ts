@@ -7,5 +7,4 @@ export const say = sayIn('en', screen)
 const words: Readonly<Record<string, string>> = screen
 
 /** A word for a key that another room chose; the key itself where the catalogue has none for it. */
-export const wordFor = (prefix: string, key: string): string =>
-  `${prefix}.${key}` in words ? say(`${prefix}.${key}`) : key
+export const wordFor = (key: string): string => (key in words ? say(key) : key)

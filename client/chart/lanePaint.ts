@@ -146,6 +146,21 @@ const drawLaneMark = (board: Board, scene: Scene, lane: Lane): void => {
   } else drawMark(ctx, lane.mark, x, board.y(margin), scale, colours, scene.stale)
 }
 
+/**
+ * Where the sounding stands: over the whisker of what is below, under that of what is near; never on
+ * the line itself.
+ */
+const soundingLevel = (board: Board, { size }: Scene, lane: Lane, margin: number): number => {
+  const u_K = marginU_K(lane.item) ?? 0
+  const line = board.y(0)
+  const under = board.y(margin - 2 * u_K) + 17 * size
+  const over = board.y(margin + 2 * u_K) - 7 * size
+  const onLine = (y: number) => y < line + 16 * size && y > line - 4 * size
+  const wanted = lane.mark === 'near' || onLine(over) || over < board.top + 14 * size ? under : over
+  const clear = onLine(wanted) ? line + 18 * size : wanted
+  return Math.max(board.top + 15 * size, Math.min(board.bottom - 5 * size, clear))
+}
+
 /** The sounding: the margin in figures at every mark that asks for a hand. */
 const drawSounding = (board: Board, scene: Scene, lane: Lane): void => {
   const margin = scene.margin(lane.item)
@@ -153,8 +168,6 @@ const drawSounding = (board: Board, scene: Scene, lane: Lane): void => {
   const { ctx } = board
   const { colours, size } = scene
   const x = board.x(lane.x + lane.w / 2)
-  const within = (y: number) =>
-    Math.max(board.top + 15 * size, Math.min(board.bottom - 5 * size, y))
   ctx.textAlign = 'center'
   ctx.textBaseline = 'alphabetic'
   setFont(board, scene, 15, 700)
@@ -175,43 +188,46 @@ const drawSounding = (board: Board, scene: Scene, lane: Lane): void => {
     }
     return
   }
-  const u_K = marginU_K(lane.item) ?? 0
-  const under = board.y(margin - 2 * u_K) + 17 * size
-  const over = board.y(margin + 2 * u_K) - 7 * size
-  // Above the whisker, unless it would then lie on the line itself or out of the water.
-  const line = board.y(0)
-  const clashes = over < line + 14 * size && over > line - 22 * size
-  const y =
-    lane.mark === 'near' || clashes || over < board.top + 14 * size
-      ? Math.max(under, line + 18 * size)
-      : over
+  const y = soundingLevel(board, scene, lane, margin)
   const text = scene.stale
     ? duration(scene.now_ms - scene.asOf_ms)
     : lane.mark === 'near'
       ? signed(margin)
       : num(margin)
-  haloText(ctx, text, x, within(y), colours.ink, colours.air)
+  haloText(ctx, text, x, y, colours.ink, colours.air)
 }
 
-/** The name upright beside the mark, on the side of the line where the mark is not. */
+/** A name with less room than this is written where there is more, px. */
+const leastName = 84
+
+/**
+ * The name upright beside the mark: above the line, over the mark where that stands there too; under
+ * the line, and under the sounding, where above there is no room.
+ */
 const drawName = (board: Board, scene: Scene, lane: Lane): void => {
   const opened = needsRoom(lane.mark) || lane.mark === 'silent'
   if (!opened || lane.w < 30 * scene.size) return
   const { ctx } = board
   const { colours, size } = scene
   const margin = scene.margin(lane.item)
-  const below = margin !== null && margin > 0.6
   const line = board.y(0)
+  const overMark = margin !== null && margin > -0.4 && lane.mark !== 'turned'
+  const foot = Math.min(line - 9 * size, overMark ? board.y(margin ?? 0) - 16 * size : line)
+  const above = foot - board.top - 6
+  const head =
+    margin !== null && lane.mark === 'near'
+      ? Math.max(line + 10 * size, soundingLevel(board, scene, lane, margin) + 8 * size)
+      : line + 10 * size
+  const below = board.bottom - head - 8
+  const isBelow = above < leastName * size && below > above
   ctx.save()
-  ctx.translate(board.x(lane.x + lane.w) - 5 * size, line + (below ? 10 : -9) * size)
+  ctx.translate(board.x(lane.x + lane.w) - 5 * size, isBelow ? head : foot)
   ctx.rotate(-Math.PI / 2)
   setFont(board, scene, 13)
   ctx.textBaseline = 'alphabetic'
-  ctx.textAlign = below ? 'right' : 'left'
-  const room = below ? board.bottom - line - 16 : line - board.top - 14
-  const nudge = !below && lane.mark === 'near' ? 14 * size : 0
-  const text = fitted(ctx, lane.item.productName, room - nudge)
-  haloText(ctx, text, nudge, 0, colours.ink, below ? colours.d1 : colours.air, 3)
+  ctx.textAlign = isBelow ? 'right' : 'left'
+  const text = fitted(ctx, lane.item.productName, isBelow ? below : above)
+  haloText(ctx, text, 0, 0, colours.ink, isBelow ? colours.d1 : colours.air, 3)
   ctx.restore()
 }
 
@@ -337,10 +353,12 @@ const footText = ({ ctx }: Board, { size }: Scene, part: Lane | Fold): string =>
   const place = shortPlace(part.item.position)
   const room = Math.max(part.w + 2, 20 * size)
   if (ctx.measureText(place).width <= room) return place
+  // `TK-2` in TK is 2, and `tray 5` is 5: the neighbours say what kind of place it is.
   const tail = place.startsWith(part.item.storageUnit)
     ? place.slice(part.item.storageUnit.length).replace(/^[\s-]+/, '')
-    : place
-  return fitted(ctx, tail === '' ? place : tail, room)
+    : (place.split(/\s+/).at(-1) ?? place)
+  const text = fitted(ctx, tail === '' ? place : tail, room)
+  return text.length < 3 && text.endsWith('…') ? '' : text
 }
 
 /** The foot of a lane: what it rests on, and its place. Calm places give way where room is short. */

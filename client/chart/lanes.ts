@@ -1,5 +1,5 @@
 import type { ItemView, Snapshot, StorageUnitView } from '../../config/schema/api.js'
-import { type MarkKind, markOf, needsRoom } from '../shown.js'
+import { isAsIntended, isFalling, type MarkKind, markOf, needsRoom } from '../shown.js'
 
 /** One item's lane. Its place among the others never changes; only its width does. */
 export type Lane = {
@@ -54,10 +54,17 @@ const foldWeight = 2.2
 /** Fewer calm neighbours than these are left as they are: a strip would save no room. */
 const foldFrom = 3
 
-const isCalm = (mark: MarkKind): boolean => !needsRoom(mark) && mark !== 'silent'
+type Policy = Snapshot['site']['policy']
+type LanePart = { readonly kind: 'lane'; readonly item: ItemView; readonly mark: MarkKind }
+
+/** What nobody needs to see one by one. What falls towards its line stays in sight. */
+const isCalm = (lane: LanePart, policy: Policy): boolean =>
+  !needsRoom(lane.mark) &&
+  lane.mark !== 'silent' &&
+  (isAsIntended(lane.item) || !isFalling(lane.item, policy))
 
 type Part =
-  | { readonly kind: 'lane'; readonly item: ItemView; readonly mark: MarkKind }
+  | LanePart
   | {
       readonly kind: 'fold'
       readonly key: string
@@ -69,11 +76,12 @@ const foldKey = (items: readonly ItemView[]): string => `${items[0]?.id}…${ite
 
 /** Runs of calm neighbours become strips, unless somebody opened them. */
 const folded = (
-  lanes: readonly Extract<Part, { kind: 'lane' }>[],
+  lanes: readonly LanePart[],
   opened: ReadonlySet<string>,
+  policy: Policy,
 ): Part[] => {
   const parts: Part[] = []
-  let run: Extract<Part, { kind: 'lane' }>[] = []
+  let run: LanePart[] = []
   const flush = (): void => {
     const items = run.map((l) => l.item)
     if (run.length >= foldFrom && !items.some((i) => opened.has(i.id)))
@@ -82,7 +90,7 @@ const folded = (
     run = []
   }
   for (const lane of lanes) {
-    if (isCalm(lane.mark)) run.push(lane)
+    if (isCalm(lane, policy)) run.push(lane)
     else {
       flush()
       parts.push(lane)
@@ -103,8 +111,9 @@ type OpenBay = { readonly unit: StorageUnitView; readonly parts: readonly Part[]
  *
  * @param room  in widths of a calm lane
  */
-const unfolded = (bays: readonly OpenBay[], room: number): readonly OpenBay[] => {
-  const isPressing = (bay: OpenBay) => bay.parts.some((p) => p.kind === 'lane' && !isCalm(p.mark))
+const unfolded = (bays: readonly OpenBay[], room: number, policy: Policy): readonly OpenBay[] => {
+  const isPressing = (bay: OpenBay) =>
+    bay.parts.some((p) => p.kind === 'lane' && !isCalm(p, policy))
   const strips = bays
     .flatMap((bay) =>
       bay.parts.flatMap((part) =>
@@ -167,10 +176,10 @@ const unitWidth = (
 export const layoutLanes = (
   units: readonly StorageUnitView[],
   items: readonly ItemView[],
-  policy: Snapshot['site']['policy'],
+  policy: Policy,
   rules: LaneRules,
 ): Layout => {
-  const byUnit = new Map<string, Extract<Part, { kind: 'lane' }>[]>()
+  const byUnit = new Map<string, LanePart[]>()
   for (const item of items) {
     const lane = { kind: 'lane', item, mark: markOf(item, policy) } as const
     const known = byUnit.get(item.storageUnit)
@@ -187,8 +196,9 @@ export const layoutLanes = (
   const bays =
     rules.fixed === null && crowded
       ? unfolded(
-          all.map((bay) => ({ unit: bay.unit, parts: folded(bay.lanes, rules.opened) })),
+          all.map((bay) => ({ unit: bay.unit, parts: folded(bay.lanes, rules.opened, policy) })),
           room / rules.comfortable,
+          policy,
         )
       : open
   const one = rules.fixed ?? unitWidth(bays, room, rules)

@@ -216,6 +216,8 @@ const labels = (chart: Chart, view: TimeView): void => {
     ctx.fillRect(now - 0.6, area.top, 1.2, area.bottom - area.top)
     write(say('chart.now'), now + 5, area.top + 14, 650, colours.ink)
   }
+  if (view.readings.probes.length === 0)
+    write(say('chart.noProbe'), area.left + 8, area.top + 30, 400, colours.ink)
   const own = view.narrow
     ? say('chart.ownShort', { T: celsius(freezingPoint_C, 2) })
     : say('chart.own', {
@@ -366,7 +368,8 @@ const strip = (canvas: HTMLCanvasElement, seen: () => TimeView | null): Chart<'l
         ctx.font = `650 13px ${colours.font}`
         ctx.textAlign = 'right'
         const text = view.say('chart.before', { count: item.count, chance: chance(low, high) })
-        haloText(ctx, text, now - 8, area.top + 18, colours.ink, colours.air)
+        if (item.verdict.evidence !== 'not assessable')
+          haloText(ctx, text, now - 8, area.top + 18, colours.ink, colours.air)
       }
       ctx.strokeStyle = colours.ink
       ctx.lineWidth = 1

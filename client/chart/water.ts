@@ -115,7 +115,9 @@ export const drawLineLabels = (board: Board, scene: Scene): void => {
   ctx.textAlign = 'left'
   ctx.textBaseline = 'alphabetic'
   const name = scene.say('waterline.line')
-  const at = freeRun(board, scene, ctx.measureText(name).width + 10)?.x ?? null
+  const width = ctx.measureText(name).width + 10
+  const quiet = (lane: Lane) => lane.item.forecast.every(([, , middle]) => middle > 1.2)
+  const at = (freeRun(board, scene, width, quiet) ?? freeRun(board, scene, width))?.x ?? null
   if (at !== null) haloText(ctx, name, at + 6, board.y(0) - 8 * size, colours.ink, colours.air)
   const run = freeRun(board, scene, 34 * size, (l) => isTinted(l) && l.item.tints_K[1] !== null)
   if (run === null) return

@@ -81,6 +81,7 @@ const Row = ({ term, figure, note }: { term: string; figure: string; note?: stri
 const Figures = ({ item }: { item: ItemView }) => {
   const { verdict } = item
   const f = verdict.ifItFreezes
+  if (f !== null && f.jump_K < 0.005) return <p class="pad">{say('freezes.notBelow')}</p>
   if (f === null) return <p class="pad">{say('freezes.unknown')}</p>
   const rises = (r: readonly [number, number, number] | null) =>
     r === null ? say('frame.unknown') : `${interval(r[0], r[2], r[2] < 1 ? 2 : 1)} K`

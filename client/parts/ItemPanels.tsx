@@ -50,6 +50,8 @@ export const ReadingLimits = ({ item }: { item: ItemView }) => {
 export const HasIceFormed = ({ item, at }: { item: ItemView; at: Zoned }) => {
   const { turned, hasBeenFrozen, phase } = item.verdict
   const [low, , high] = turned.any
+  // Of what nobody hears nothing can be said, least of all that a chance is small.
+  const assessable = item.verdict.evidence !== 'not assessable'
   const time = (text: string) => when(Date.parse(text), at.now_ms, at.zone)
   return (
     <section class="panel" aria-label={say('ice.title')}>
@@ -60,9 +62,9 @@ export const HasIceFormed = ({ item, at }: { item: ItemView; at: Zoned }) => {
       <dl class="out">
         <div>
           <dt>{say('ice.any', { count: item.count })}</dt>
-          <dd>{chance(low, high)}</dd>
+          <dd>{assessable ? chance(low, high) : say('ice.notAssessable')}</dd>
         </div>
-        {item.count > 1 && (
+        {assessable && item.count > 1 && (
           <div>
             <dt>{say('ice.count')}</dt>
             <dd>
@@ -118,7 +120,7 @@ export const RestsOn = ({ curves, item }: { curves: Asked<ItemCurves>; item: Ite
           <tbody>
             {parts.map((part) => (
               <tr key={part.key}>
-                <th scope="row">{wordFor('budget', part.key)}</th>
+                <th scope="row">{wordFor(part.key)}</th>
                 <td class="bar">
                   <i style={{ width: `${(100 * part.u_K) / together}%` }} />
                 </td>
@@ -137,7 +139,7 @@ export const RestsOn = ({ curves, item }: { curves: Asked<ItemCurves>; item: Ite
           </tbody>
         </table>
         <p class="small">
-          {say('budget.model', {
+          {say('item.model', {
             model: item.verdict.model,
             revision: String(item.verdict.configRevision),
           })}

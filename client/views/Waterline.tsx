@@ -94,7 +94,9 @@ export const Waterline = () => {
     : item === undefined
       ? say('waterline.hint')
       : readout(item, at)
-  const firstInNeed = known.storageUnits.find((u) => worstOf(known, u.id) === 'turned')?.id
+  const firstInNeed = worst
+    .map((kind) => known.storageUnits.find((u) => worstOf(known, u.id) === kind)?.id)
+    .find((id) => id !== undefined)
   const unit = chosen.value ?? firstInNeed ?? known.storageUnits[0]?.id ?? ''
   return (
     <div class="waterline-view">

@@ -456,10 +456,10 @@ const curves = (id: string, t: number): ItemCurves => {
     solid90: { h_kJ_kg: c.hFrozen(solid_C), T_C: solid_C },
     stop_C: -21.2,
     budget: [
-      { key: 'position', u_K: u * 0.6 },
-      { key: 'lag', u_K: u * 0.7 },
-      { key: 'probe', u_K: u * 0.35 },
-      { key: 'freezing point', u_K: 0.015 },
+      { key: 'budget.position', u_K: u * 0.6 },
+      { key: 'budget.gradient', u_K: u * 0.7 },
+      { key: 'budget.probe', u_K: u * 0.35 },
+      { key: 'budget.freezingPoint', u_K: 0.015 },
     ],
   }
 }
