@@ -1,5 +1,6 @@
 import type { NucleationClass } from '../../config/schema/product.js'
 import type { Interval } from './freezingTime.js'
+import { addToSpread, beginSpread, quantileOfSpread } from './spread.js'
 
 /** config/library/priors.json. */
 export type Priors = {
@@ -137,11 +138,11 @@ export type Chance = {
   readonly mean: number
 }
 
-/** Bins of ln Λ for the quantiles, a tenth of a decade wide; what is less likely is as good as 0. */
-const bins = 400
-const lnLeast = -80
-const binWidth = 0.25
-const histogram = new Float64Array(bins)
+/** Low, middle and high of every interval. */
+const shares = [0.1, 0.5, 0.9]
+
+/** Half of the stretch of ln κ that a node stands for. */
+const halfStep = (k: Kinetics): number => ((k.lnRate[1] ?? k.lnRate[0]!) - k.lnRate[0]!) / 2
 
 /** Below this ln, log1p(x) is x to a part in a million. */
 const lnSmall = -14
@@ -171,11 +172,11 @@ export function chanceOf(
   ahead: readonly Ahead[],
   count: number,
 ): Chance {
-  histogram.fill(0)
+  beginSpread()
   const lnNu = Math.log(k.nu)
+  const half = halfStep(k)
   let all = 0
   let mean = 0
-  let none = 0
   for (let j = 0; j < k.b.length; j++) {
     const E = past[j] ?? 0
     for (const way of ahead) {
@@ -186,48 +187,26 @@ export function chanceOf(
         all += w
         // ln of κe/(ν + κE), then of Λ = ν ln[(ν + κ(E + e))/(ν + κE)]
         const x = k.lnRate[i]! + lnAhead - (E > 0 ? Math.log(k.nu + rate * E) : lnNu)
-        let lnΛ = lnNu + x
         if (x > lnSmall) {
-          const Λ = k.nu * Math.log1p(Math.exp(x))
-          lnΛ = Math.log(Λ)
+          const κe = Math.exp(x)
+          const Λ = k.nu * Math.log1p(κe)
           mean -= w * Math.expm1(-Λ)
-        } else mean += w * Math.exp(lnΛ)
-        const bin = (lnΛ - lnLeast) / binWidth
-        if (bin >= 0) share(Math.min(bin, bins - 1), w)
-        else none += w
+          // A node stands for its stretch of ln κ; Λ bends, so its stretch of ln Λ is shorter.
+          addToSpread(Math.log(Λ), (half * κe * k.nu) / ((1 + κe) * Λ), w)
+        } else {
+          mean += w * Math.exp(lnNu + x)
+          addToSpread(lnNu + x, half, w)
+        }
       }
     }
   }
-  const events = [0.1, 0.5, 0.9].map((p) => quantile(p * all, none))
+  const events = shares.map(quantileOfSpread)
   const chance = (n: number): Interval => [
     -Math.expm1(-n * events[0]!),
     -Math.expm1(-n * events[1]!),
     -Math.expm1(-n * events[2]!),
   ]
   return { one: chance(1), any: chance(count), mean: all > 0 ? mean / all : 0 }
-}
-
-/** A weight between two neighbouring bins, so that quantiles move smoothly with their cause. */
-const share = (bin: number, w: number): void => {
-  const k = Math.floor(bin)
-  const f = bin - k
-  histogram[k] = histogram[k]! + w * (1 - f)
-  if (k + 1 < bins) histogram[k + 1] = histogram[k + 1]! + w * f
-}
-
-/** Λ below which so much weight lies. */
-const quantile = (want: number, none: number): number => {
-  if (want <= none) return 0
-  let before = none
-  for (let k = 0; k < bins; k++) {
-    const w = histogram[k]!
-    if (before + w >= want && w > 0) {
-      const f = (want - before) / w - 0.5
-      return Math.exp(lnLeast + (k + f) * binWidth)
-    }
-    before += w
-  }
-  return 0
 }
 
 /**
@@ -243,10 +222,10 @@ export function hazard_h(
 ): { readonly interval: Interval; readonly mean: number } {
   if (!(depth_K > 0)) return { interval: [0, 0, 0], mean: 0 }
   const lnDepth = Math.log(depth_K / 10)
-  histogram.fill(0)
+  const half = halfStep(k)
+  beginSpread()
   let all = 0
   let mean = 0
-  let none = 0
   for (let j = 0; j < k.b.length; j++) {
     const E = past[j] ?? 0
     const lnPower = k.b[j]! * lnDepth
@@ -257,14 +236,9 @@ export function hazard_h(
       const ln = k.lnRate[i]! + lnPower - Math.log1p((rate * E) / k.nu)
       all += w
       mean += w * Math.exp(ln)
-      const bin = (ln - lnLeast) / binWidth
-      if (bin < 0) none += w
-      else share(Math.min(bin, bins - 1), w)
+      addToSpread(ln, half, w)
     }
   }
-  const at = (p: number) => 3600 * quantile(p * all, none)
-  return { interval: [at(0.1), at(0.5), at(0.9)], mean: all > 0 ? (3600 * mean) / all : 0 }
+  const [low, middle, high] = shares.map((p) => 3600 * quantileOfSpread(p))
+  return { interval: [low!, middle!, high!], mean: all > 0 ? (3600 * mean) / all : 0 }
 }
-
-/** Depth below which a temperature tells of measurement, not of nucleation (physics.md, rule c). */
-export const leastDepth_K = 0.5
