@@ -1,17 +1,23 @@
 // Who may import whom: one line per room; DEVELOPERS.md says it in words. What a line does not name
 // is refused.
 //
-// The parser (see `options`) does not tell a type from a value. So what a room may import as a type
-// only is let through here, noted as a rule that is never reported, and held to by
-// test/house/importRules.test.ts, which reads those notes.
+// These rules hold for values, circles included. Types are gone before anything runs, so two files
+// may share a shape both ways; but a room that may know another's shape only is said here too, and
+// test/house/importRules.test.ts reads that from the rules of severity 'ignore'.
 
 const swc = require('@swc/core')
 
-// The cruiser asks this parser for TypeScript without JSX, and has no option to say otherwise; it
-// would stop at the first <div>. So JSX is added here, where the cruiser will look for the parser.
+const isType = ({ type, typeOnly, specifiers = [] }) =>
+  typeOnly === true ||
+  (type === 'ImportDeclaration' && specifiers.length > 0 && specifiers.every((s) => s.isTypeOnly))
+
+// The cruiser asks this parser for TypeScript without JSX and does not tell a type from a value; it
+// has no option to say otherwise. So both are said here, where it looks for the parser.
 const { parseFileSync } = swc
-swc.parseFileSync = (file, options) =>
-  parseFileSync(file, { ...options, tsx: file.endsWith('.tsx') })
+swc.parseFileSync = (file, options) => {
+  const parsed = parseFileSync(file, { ...options, tsx: file.endsWith('.tsx') })
+  return { ...parsed, body: parsed.body.filter((statement) => !isType(statement)) }
+}
 
 const schema = '^config/schema/'
 const refusal = '^config/schema/refusal\\.ts$'
@@ -34,7 +40,7 @@ const only = (name, room, allowed, asTypes = []) => [
     name,
     severity: 'error',
     from: { path: room },
-    to: { pathNot: [room, ...allowed, ...asTypes] },
+    to: { pathNot: [room, ...allowed] },
   },
   ...(asTypes.length === 0
     ? []
@@ -164,18 +170,30 @@ module.exports = {
     ...only('settings stand alone', '^server/settings\\.ts$', [schema, node('fs', 'path', 'util')]),
     ...only('a clock is a seam', siteClock, [seam]),
     ...only('threads share shapes', watching, [], [schema, seam, store, '^server/board\\.ts$']),
-    ...only('worker joins the watch to the log', '^server/worker\\.ts$', [
-      '^server/(alarms|record)/',
-      physics, // the two curves of one item, asked for by a screen
-      watch,
-      watching,
-      library,
-      words,
+    ...only('history answers from store and watch', '^server/itemHistory\\.ts$', [
       schema,
       seam,
-      store, // it reads what it missed from disk, by a connection of its own
-      node('worker_threads'),
+      store,
+      watch,
     ]),
+    ...only(
+      'worker joins the watch to the log',
+      '^server/worker\\.ts$',
+      [
+        '^server/(alarms|record)/',
+        '^server/itemHistory\\.ts$',
+        physics, // the two curves of one item, asked for by a screen
+        watch,
+        watching,
+        library,
+        words,
+        schema,
+        seam,
+        store, // it reads what it missed from disk, by a connection of its own
+        node('worker_threads', 'crypto'),
+      ],
+      ['^server/board\\.ts$'],
+    ),
     ...only('sim never sees the judge', '^sim/', [
       physics,
       schema,
@@ -200,7 +218,7 @@ module.exports = {
     ]),
   ],
   options: {
-    // Otherwise imports of types are invisible, and a circle of types with them.
+    // What is written counts, not what a compiler would leave of it.
     tsPreCompilationDeps: true,
     tsConfig: { fileName: 'tsconfig.json' },
     // TypeScript 7 has no parser that this tool can use: without one that it can it would cruise no

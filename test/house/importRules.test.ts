@@ -4,7 +4,7 @@ import { createRequire } from 'node:module'
 import { tmpdir } from 'node:os'
 import { dirname, join, normalize, resolve } from 'node:path'
 import { afterAll, beforeAll, describe, expect, test } from 'vitest'
-import { importsOf, read, treeFiles, under } from './tree.js'
+import { importsOf, read, under } from './tree.js'
 
 const rooms = ['server', 'client', 'sim', 'config']
 const rulesFile = 'config/tools/import-rules.cjs'
@@ -102,6 +102,11 @@ const bad = [
     text: "import { a } from './plantedTrip.js'\nexport const b = () => a\n",
   },
   {
+    rule: 'store is SQL and nothing else',
+    file: 'server/store/planted.ts',
+    text: "import { cautionsFor } from '../watch/cautions.js'\nexport const a = cautionsFor\n",
+  },
+  {
     rule: 'what is imported is there',
     file: 'server/plantedAway.ts',
     text: "import { a } from './nowhere.js'\nexport const b = a\n",
@@ -137,45 +142,73 @@ describe('a copy with bad imports planted', () => {
   })
 })
 
-// The cruiser's parser sees no difference between a type and a value; see import-rules.cjs.
-describe('what a room may know only as a type, it imports only as a type', () => {
+// The cruiser is told of values only; see import-rules.cjs.
+describe('types cross only where a rule lets the room know another, as a type at least', () => {
   type Rule = {
-    readonly name: string
     readonly severity: string
     readonly from: { readonly path?: string }
-    readonly to: { readonly path?: string | readonly string[] }
+    readonly to: {
+      readonly path?: string | readonly string[]
+      readonly pathNot?: string | readonly string[]
+    }
   }
   const { forbidden } = createRequire(import.meta.url)(resolve(rulesFile)) as { forbidden: Rule[] }
-  const notes = forbidden.filter((rule) => rule.severity === 'ignore')
+  const among = (patterns: string | readonly string[] | undefined, path: string) =>
+    [patterns ?? []].flat().some((pattern) => new RegExp(pattern).test(path))
 
-  const breaches = (path: string, source: string): string[] =>
-    importsOf(source)
-      .filter(({ from, typesOnly }) => from.startsWith('.') && !typesOnly)
+  const breaches = (path: string, source: string): string[] => {
+    const rooms = forbidden.filter(
+      (rule) => rule.from.path && new RegExp(rule.from.path).test(path),
+    )
+    const walls = rooms.filter((rule) => rule.severity === 'error')
+    const notes = rooms.filter((rule) => rule.severity === 'ignore')
+    return importsOf(source)
+      .filter(({ from, typesOnly }) => from.startsWith('.') && typesOnly)
       .map(({ from }) => normalize(join(dirname(path), from)).replace(/\.js$/, '.ts'))
-      .filter((to) =>
-        notes.some(
-          (note) =>
-            new RegExp(note.from.path ?? '^$').test(path) &&
-            [note.to.path ?? []].flat().some((pattern) => new RegExp(pattern).test(to)),
-        ),
+      .filter(
+        (to) =>
+          walls.some((wall) => !among(wall.to.pathNot, to)) &&
+          !notes.some((note) => among(note.to.path, to)),
       )
       .map((to) => `${path} → ${to}`)
+  }
 
   test('in the tree', () => {
-    expect(notes.length).toBeGreaterThan(0)
-    const files = treeFiles('server').filter((path) => path.endsWith('.ts'))
+    const files = rooms.flatMap((room) => under(room, /\.tsx?$/))
     expect(files.flatMap((path) => breaches(path, read(path)))).toEqual([])
   })
 
   test.each([
-    { source: "import { step } from '../watch/step.js'", refused: true },
-    { source: "import type { State } from '../watch/state.js'", refused: false },
-    { source: "import { type State } from '../watch/state.js'", refused: false },
-    { source: "import { type State, step } from '../watch/state.js'", refused: true },
-    { source: "export * from '../watch/state.js'", refused: true },
-    { source: "import {\n  a,\n  b,\n} from '../watch/state.js'", refused: true },
-    { source: "// import { step } from '../watch/step.js'", refused: false },
-  ])('a store that says $source', ({ source, refused }) => {
-    expect(breaches('server/store/planted.ts', source).length > 0).toBe(refused)
+    {
+      room: 'server/store',
+      source: "import type { State } from '../watch/state.js'",
+      refused: false,
+    },
+    {
+      room: 'server/physics',
+      source: "import type { State } from '../watch/state.js'",
+      refused: true,
+    },
+    { room: 'sim', source: "import { type State } from '../server/watch/state.js'", refused: true },
+    {
+      room: 'sim',
+      source: "import {\n  type State,\n} from '../server/watch/state.js'",
+      refused: true,
+    },
+    { room: 'sim', source: "// import type { a } from '../server/watch/state.js'", refused: false },
+    { room: 'server/watch', source: "export type { A } from '../seam.js'", refused: true },
+  ])('$room with $source', ({ room, source, refused }) => {
+    expect(breaches(`${room}/planted.ts`, source).length > 0).toBe(refused)
   })
+})
+
+test.each([
+  { source: "import type { State } from './state.js'", typesOnly: true },
+  { source: "import { type State } from './state.js'", typesOnly: true },
+  { source: "import { type State, step } from './state.js'", typesOnly: false },
+  { source: "import step, { type State } from './state.js'", typesOnly: false },
+  { source: "import * as all from './state.js'", typesOnly: false },
+  { source: "export * from './state.js'", typesOnly: false },
+])('types alone in $source: $typesOnly', ({ source, typesOnly }) => {
+  expect(importsOf(source)).toEqual([{ from: './state.js', typesOnly }])
 })

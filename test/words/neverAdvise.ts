@@ -35,7 +35,7 @@ export const neverAdvise: readonly Advice[] = [
       /\b(warm|thaw|heat)\w*\b.{0,40}\b(and|then|to)\b.{0,15}\b(use|sell|serve)\b/i,
       /\bstill (good|usable|fine|okay|ok|safe|effective|potent|fit|saleable)\b/i,
       /\b(safe|fit|good|fine|okay|ok|suitable|cleared|ready)\s+(to|for)\s+(use|sell|serve|sale|inject\w*|drink|eat|administ\w*|release|consumption)\b/i,
-      /\b(can|may) (still )?be (used|sold|served|released|consumed|eaten|given)\b/i,
+      /\b(can|may) (still )?be (used|sold|served|released|consumed|eaten)\b/i,
     ],
     excusedBy: negation,
     refused: [
