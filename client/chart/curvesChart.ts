@@ -219,7 +219,13 @@ export const curvesChart = (canvas: HTMLCanvasElement) => {
           max: Math.ceil(span.to / 10) * 10,
           grid,
           border: { color: colours.ink },
-          ticks: { ...ticks, maxTicksLimit: 6, callback: (v) => num(Number(v), 0), maxRotation: 0 },
+          ticks: {
+            ...ticks,
+            includeBounds: false,
+            maxTicksLimit: 6,
+            callback: (v) => num(Number(v), 0),
+            maxRotation: 0,
+          },
           title: {
             display: true,
             text: next.say('curves.heat'),

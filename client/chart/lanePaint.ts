@@ -177,7 +177,12 @@ const drawSounding = (board: Board, scene: Scene, lane: Lane): void => {
     const time = at_ms === null ? null : clockMinute(at_ms, scene.zone)
     if (depth === null && time === null) return
     const from = board.y(Math.min(depth ?? 0, margin)) + (depth === null ? 16 * size : 0)
-    let y = Math.min(from + 17 * size, board.bottom - 20 * size)
+    // A shallow turn lies under the mark itself: the figure clears it.
+    const under = Math.max(from + 17 * size, board.y(margin) + 31 * size)
+    let y = Math.min(
+      depth === null || depth > -2 ? under : from + 17 * size,
+      board.bottom - 20 * size,
+    )
     if (depth !== null) {
       haloText(ctx, num(depth), x, y, colours.ink, colours.air)
       y += 15 * size
@@ -211,8 +216,8 @@ const drawName = (board: Board, scene: Scene, lane: Lane): void => {
   const { colours, size } = scene
   const margin = scene.margin(lane.item)
   const line = board.y(0)
-  const overMark = margin !== null && margin > -0.4 && lane.mark !== 'turned'
-  const foot = Math.min(line - 9 * size, overMark ? board.y(margin ?? 0) - 16 * size : line)
+  const overMark = margin !== null && margin > -0.4
+  const foot = Math.min(line - 9 * size, overMark ? board.y(margin ?? 0) - 17 * size : line)
   const above = foot - board.top - 6
   const head =
     margin !== null && lane.mark === 'near'
@@ -356,7 +361,7 @@ const footText = ({ ctx }: Board, { size }: Scene, part: Lane | Fold): string =>
   // `TK-2` in TK is 2, and `tray 5` is 5: the neighbours say what kind of place it is.
   const tail = place.startsWith(part.item.storageUnit)
     ? place.slice(part.item.storageUnit.length).replace(/^[\s-]+/, '')
-    : (place.split(/\s+/).at(-1) ?? place)
+    : (place.split(/[\s,]+/).find((word) => /\d/.test(word)) ?? place)
   const text = fitted(ctx, tail === '' ? place : tail, room)
   return text.length < 3 && text.endsWith('…') ? '' : text
 }

@@ -143,7 +143,7 @@ const ground = (chart: Chart, view: TimeView): void => {
   for (const [i, tint] of (['d1', 'd2', 'd3', 'd4'] as const).entries()) {
     const from = held(freezingPoint_C + (levels[i] ?? -999))
     const to = held(freezingPoint_C + (levels[i + 1] ?? -999))
-    ctx.fillStyle = colours[tint]
+    ctx.fillStyle = colours[view.stale ? 'd1' : tint]
     if (to > from) ctx.fillRect(area.left, from, w, to - from)
   }
   if (view.practice) drawPractice(ctx, area, view.say('practice.word'), colours)
@@ -367,7 +367,10 @@ const strip = (canvas: HTMLCanvasElement, seen: () => TimeView | null): Chart<'l
         const [low, , high] = item.verdict.turned.any
         ctx.font = `650 13px ${colours.font}`
         ctx.textAlign = 'right'
-        const text = view.say('chart.before', { count: item.count, chance: chance(low, high) })
+        const text = view.say(view.narrow ? 'chart.beforeShort' : 'chart.before', {
+          count: item.count,
+          chance: chance(low, high),
+        })
         if (item.verdict.evidence !== 'not assessable')
           haloText(ctx, text, now - 8, area.top + 18, colours.ink, colours.air)
       }

@@ -1,4 +1,4 @@
-import { isAsIntended } from '../shown.js'
+import { isAsIntended, needsRoom } from '../shown.js'
 import type { Bay, Lane } from './lanes.js'
 import { blindPattern } from './pen.js'
 import { type Board, haloText, type Scene, scale_K, setFont } from './scene.js'
@@ -30,7 +30,8 @@ export const drawWater = (board: Board, scene: Scene, bay: Bay): void => {
       ctx.fillRect(x, board.top, part.w, board.bottom - board.top)
       continue
     }
-    if (part.kind === 'fold' || !isTinted(part)) {
+    // From old figures no chance is reckoned: the water is plain then.
+    if (part.kind === 'fold' || scene.stale || !isTinted(part)) {
       ctx.fillStyle = colours.d1
       ctx.fillRect(x - 0.3, line, part.w + 0.6, board.bottom - line)
       continue
@@ -48,6 +49,7 @@ export const drawWater = (board: Board, scene: Scene, bay: Bay): void => {
 
 /** The edges of the tints: 1, 10 and 50 %, the middle one heavy; never smoothed between items. */
 export const drawIsobaths = (board: Board, scene: Scene, bay: Bay): void => {
+  if (scene.stale) return
   const { ctx } = board
   ctx.strokeStyle = scene.colours.isobath
   ctx.setLineDash([])
@@ -98,7 +100,8 @@ const freeRun = (
     for (const part of bay.parts) {
       const x = board.x(part.x)
       const margin = part.kind === 'lane' ? scene.margin(part.item) : null
-      if (part.kind === 'fold' || margin === null || margin < 1.2 || x < board.left - 1) from = null
+      const inTheWay = part.kind === 'fold' || needsRoom(part.mark) || x < board.left - 1
+      if (inTheWay || margin === null || margin < 1.2) from = null
       else if (!also(part)) from = null
       else from ??= { x, lane: part }
       if (from !== null && x + part.w - from.x >= width) return from
@@ -120,7 +123,7 @@ export const drawLineLabels = (board: Board, scene: Scene): void => {
   const at = (freeRun(board, scene, width, quiet) ?? freeRun(board, scene, width))?.x ?? null
   if (at !== null) haloText(ctx, name, at + 6, board.y(0) - 8 * size, colours.ink, colours.air)
   const run = freeRun(board, scene, 34 * size, (l) => isTinted(l) && l.item.tints_K[1] !== null)
-  if (run === null) return
+  if (run === null || scene.stale) return
   let above = Number.NEGATIVE_INFINITY
   for (const [i, text] of ['1 %', '10 %', '50 %'].entries()) {
     const depth = run.lane.item.tints_K[i]

@@ -5,7 +5,7 @@ import { clock, clockMinute, offset } from '../format.js'
 import { follow, path, route } from '../route.js'
 import { isPhone, isWall } from '../screen.js'
 import { headline } from '../sentences.js'
-import { hands, now_ms, type Picture, picture, probesHeard } from '../site.js'
+import { hands, now_ms, type Picture, picture, probesHeard, stale } from '../site.js'
 import { chooseTheme, type ThemeChoice, themeChoice } from '../theme.js'
 import { say } from '../words.js'
 import { Logo } from './Marks.js'
@@ -140,6 +140,7 @@ export const Frame = ({ children }: { children: ComponentChildren }) => {
     phone ? 'phone' : '',
     isWall.value ? 'wall' : '',
     practice ? 'practice' : '',
+    stale.value === null ? '' : 'old-figures',
   ]
   // A new view starts at its beginning, for the keyboard and for the ear.
   const first = useRef(true)

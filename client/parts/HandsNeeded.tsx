@@ -15,7 +15,7 @@ import {
   standingWords,
 } from '../sentences.js'
 import { markOf, shortPlace } from '../shown.js'
-import { cautions, hands, now_ms, type Picture, picture, probesHeard } from '../site.js'
+import { cautions, hands, now_ms, type Picture, picture, probesHeard, stale } from '../site.js'
 import { say } from '../words.js'
 import { DoDoNot } from './DoDoNot.js'
 import { Chip, EvidenceMark, Mark } from './Marks.js'
@@ -73,7 +73,7 @@ const Opened = ({ entry, known }: { entry: Entry; known: Picture }) => {
   const texts = (
     <>
       {why !== '' && <p class="reasons">{why}</p>}
-      {left !== '' && (
+      {left !== '' && stale.value === null && (
         <p>
           <b>{say('hands.ifLeft')}</b> {left}
         </p>
@@ -170,7 +170,11 @@ export const HandsNeeded = () => {
     <section class="hands" aria-label={say('hands.title')}>
       <header>
         <h2>{say('hands.title')}</h2>
-        {entries.length > 0 && <small>{say('hands.causes', { count: entries.length })}</small>}
+        {stale.value !== null ? (
+          <small>{say('hands.stale', { time: clock(known.asOf_ms, known.site.zone) })}</small>
+        ) : (
+          entries.length > 0 && <small>{say('hands.causes', { count: entries.length })}</small>
+        )}
       </header>
       {entries.length === 0 && <Empty known={known} />}
       {shown.map((entry, i) => (

@@ -1,3 +1,4 @@
+import { useSignal } from '@preact/signals'
 import type { ItemCurves, ItemTrail, ItemView, Snapshot } from '../../config/schema/api.js'
 import { celsius, chance, clock, interval, kelvin, num, signed, when } from '../format.js'
 import { markOf } from '../shown.js'
@@ -149,6 +150,9 @@ export const RestsOn = ({ curves, item }: { curves: Asked<ItemCurves>; item: Ite
   )
 }
 
+/** Changes shown at once. */
+const changesAtATime = 10
+
 /** Changes of standing, phase or evidence, newest first. */
 export const Trail = ({
   asked,
@@ -160,45 +164,54 @@ export const Trail = ({
   at: Zoned
   policy: Snapshot['site']['policy']
   item: ItemView
-}) => (
-  <section class="panel" aria-label={say('trail.title')}>
-    <header>
-      <h2>{say('trail.title')}</h2>
-      <small>{say('trail.what')}</small>
-    </header>
-    {asked.kind === 'asking' && <p class="fetching">{say('loading.trail')}</p>}
-    {asked.kind === 'here' && asked.value.length === 0 && (
-      <p class="pad dim">{say('trail.none')}</p>
-    )}
-    {asked.kind === 'here' && (
-      <ol class="trail">
-        {asked.value.slice(0, 40).map((change) => (
-          <li key={`${change.t_ms} ${change.standing} ${change.phase} ${change.evidence}`}>
-            <b class="num" title={clock(change.t_ms, at.zone)}>
-              {when(change.t_ms, at.now_ms, at.zone)}
-            </b>
-            <span>
-              <Mark
-                kind={markOf(
-                  {
-                    ...item,
-                    announcedTurned_ms: null,
-                    verdict: { ...item.verdict, standing: change.standing },
-                  },
-                  policy,
-                )}
-                size={18}
-              />{' '}
-              <b>{say(`standing.${change.standing}`)}</b>, {say(`phase.${change.phase}`)}
-              {change.margin_K !== null && ` · ${signed(change.margin_K)} K`}
-              {change.why[0] !== undefined && <small>{change.why[0]}</small>}
-            </span>
-          </li>
-        ))}
-      </ol>
-    )}
-  </section>
-)
+}) => {
+  const upTo = useSignal(changesAtATime)
+  const more = asked.kind === 'here' ? asked.value.length - upTo.value : 0
+  return (
+    <section class="panel" aria-label={say('trail.title')}>
+      <header>
+        <h2>{say('trail.title')}</h2>
+        <small>{say('trail.what')}</small>
+      </header>
+      {asked.kind === 'asking' && <p class="fetching">{say('loading.trail')}</p>}
+      {asked.kind === 'here' && asked.value.length === 0 && (
+        <p class="pad dim">{say('trail.none')}</p>
+      )}
+      {asked.kind === 'here' && (
+        <ol class="trail">
+          {asked.value.slice(0, upTo.value).map((change) => (
+            <li key={`${change.t_ms} ${change.standing} ${change.phase} ${change.evidence}`}>
+              <b class="num" title={clock(change.t_ms, at.zone)}>
+                {when(change.t_ms, at.now_ms, at.zone)}
+              </b>
+              <span>
+                <Mark
+                  kind={markOf(
+                    {
+                      ...item,
+                      announcedTurned_ms: null,
+                      verdict: { ...item.verdict, standing: change.standing },
+                    },
+                    policy,
+                  )}
+                  size={18}
+                />{' '}
+                <b>{say(`standing.${change.standing}`)}</b>, {say(`phase.${change.phase}`)}
+                {change.margin_K !== null && ` · ${signed(change.margin_K)} K`}
+                {change.why[0] !== undefined && <small>{change.why[0]}</small>}
+              </span>
+            </li>
+          ))}
+        </ol>
+      )}
+      {more > 0 && (
+        <button type="button" class="plain rest" onClick={() => (upTo.value += changesAtATime)}>
+          {say('trail.more', { count: more })}
+        </button>
+      )}
+    </section>
+  )
+}
 
 /** Why the verdict is what it is: each reason a plain sentence. */
 export const Why = ({ item }: { item: ItemView }) =>

@@ -24,12 +24,16 @@ const Row = memo(({ item, leadText, mark }: RowProps) => {
   const { margin_K } = item.verdict
   return (
     <tr>
-      <td class="nw">{item.storageUnit}</td>
-      <td class="nw">{shortPlace(item.position)}</td>
+      <td class="nw place">{item.storageUnit}</td>
+      <td class="nw place">{shortPlace(item.position)}</td>
       <th scope="row">
         <a href={itemPath(item.id)} onClick={follow}>
           {nameAndCount(item)}
         </a>
+        {/* On a phone the place stands under the name, so that the standing is in sight. */}
+        <small class="at">
+          {item.storageUnit} {shortPlace(item.position)}
+        </small>
       </th>
       <td>
         <Chip kind={mark} text={standingWords(item)} size={20} />
@@ -69,8 +73,12 @@ export const TwinTable = () => {
         <caption class="unseen">{say('table.caption')}</caption>
         <thead>
           <tr>
-            <th scope="col">{say('table.unit')}</th>
-            <th scope="col">{say('table.place')}</th>
+            <th scope="col" class="place">
+              {say('table.unit')}
+            </th>
+            <th scope="col" class="place">
+              {say('table.place')}
+            </th>
             <th scope="col">{say('table.item')}</th>
             <th scope="col">{say('table.standing')}</th>
             <th scope="col" class="r">
