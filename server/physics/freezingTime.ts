@@ -54,7 +54,8 @@ type Place = { readonly T_C: number; readonly ice_kg_kg: number }
  * it), and as heat over ΔT where ice forms at one temperature.
  *
  * @param wall_kJ_kgK  heat capacity of the wall per kg of product
- * @param to           colder than `from`, warmer than the air
+ * @param to           colder than `from`, and warmer than the air; with air warmer than both the time of the
+ *                     way back comes out negative
  * @returns            hours, for a Biot number below 0.3 within 4 %; the coupling rules the error
  */
 export function lumpedTime_h(
@@ -97,11 +98,15 @@ export function lumpedTime_h(
   return (sum * 1000 * fill_kg) / UA_W_K / 3600
 }
 
+/** Air closer than this to a body takes no heat from it that anybody could wait for, K. */
+const leastGap_K = 1e-6
+
 /**
  * What must still leave after the jump until the product is solid, and how long that takes.
  *
  * *Solid* is 95 % of the ice that can form at the end of freezing (stop, or −40 °C), or at the air
- * where that is warmer.
+ * where that is warmer. Air that is as warm as the product where the jump ends cannot do it: then
+ * the ice melts back to what the air leaves, and `settle_h` is when 95 % of that way is gone.
  *
  * @param after     the jump; for a product that is not supercooled it is where it stands
  * @param air_C     null: not known; then solid is at the end of freezing, and takes no one knows
@@ -116,32 +121,44 @@ export function solidifying(
   coupling: Coupling | null,
 ): Solidifying {
   const iceAtAir_kg_kg = air_C === null ? null : iceAt(s, air_C)
-  const canForm = iceAtAir_kg_kg ?? mostIce_kg_kg(s)
-  // Air as warm as the product where the jump ends takes no heat: ice melts there, if anything.
-  if (canForm <= 0 || (air_C !== null && air_C >= after.end_C))
+  const target = solidShare * (iceAtAir_kg_kg ?? mostIce_kg_kg(s))
+  const from = { T_C: after.end_C, ice_kg_kg: after.firstIce_kg_kg }
+  const solid =
+    target > from.ice_kg_kg
+      ? { ...whereIce(s, wall_kJ_kgK, target), ice_kg_kg: target }
+      : { ...from, h_kJ_kg: after.h_kJ_kg }
+  const cannot = target <= 0 || (air_C !== null && solid.T_C - air_C < leastGap_K)
+  const known = air_C !== null && coupling !== null
+  if (cannot)
     return {
       iceAtAir_kg_kg,
       heatToSolid_kJ_kg: null,
       solid_h: null,
       settlesAt_kg_kg: iceAtAir_kg_kg,
-      settle_h: null,
+      settle_h: known ? meltingBack_h(s, wall_kJ_kgK, from, air_C, coupling) : null,
     }
-  const ice_kg_kg = Math.max(solidShare * canForm, after.firstIce_kg_kg)
-  const solid =
-    ice_kg_kg > after.firstIce_kg_kg
-      ? whereIce(s, wall_kJ_kgK, ice_kg_kg)
-      : { T_C: after.end_C, h_kJ_kg: after.h_kJ_kg }
-  const from = { T_C: after.end_C, ice_kg_kg: after.firstIce_kg_kg }
   return {
     iceAtAir_kg_kg,
     heatToSolid_kJ_kg: after.h_kJ_kg - solid.h_kJ_kg,
-    solid_h:
-      air_C === null || coupling === null
-        ? null
-        : interval(
-            lumpedTime_h(s, wall_kJ_kgK, from, { T_C: solid.T_C, ice_kg_kg }, air_C, coupling),
-          ),
+    solid_h: known ? interval(lumpedTime_h(s, wall_kJ_kgK, from, solid, air_C, coupling)) : null,
     settlesAt_kg_kg: null,
     settle_h: null,
   }
+}
+
+/** Time until 95 % of the ice that the air will melt has melted; null where there is none. */
+const meltingBack_h = (
+  s: Substance,
+  wall_kJ_kgK: number,
+  from: Place,
+  air_C: number,
+  coupling: Coupling,
+): Interval | null => {
+  const melts = from.ice_kg_kg - iceAt(s, air_C)
+  if (!(melts > 0)) return null
+  const ice_kg_kg = from.ice_kg_kg - solidShare * melts
+  const { T_C } = whereIce(s, wall_kJ_kgK, ice_kg_kg)
+  if (!(air_C - T_C >= leastGap_K)) return null
+  // The same way walked back: every step takes heat from warmer air, so the sum is negative.
+  return interval(-lumpedTime_h(s, wall_kJ_kgK, { T_C, ice_kg_kg }, from, air_C, coupling))
 }

@@ -94,12 +94,25 @@ describe('what is solid', () => {
       heatToSolid_kJ_kg: null,
       solid_h: null,
       settlesAt_kg_kg: 0,
-      settle_h: null,
     })
     const warm = solidAt(-0.54)
     expect(warm.heatToSolid_kJ_kg).toBeNull()
     expect(warm.settlesAt_kg_kg).toBeGreaterThan(0)
     expect(warm.settlesAt_kg_kg).toBe(warm.iceAtAir_kg_kg)
+  })
+
+  test('and settles there when 95 % of what the air melts has melted', () => {
+    const j = jump(s, 0, -6)
+    const { settle_h } = solidAt(2)
+    // Nearly all at the freezing point: 95 % of the first ice over UA and 2.55 K, and its warming
+    const heat_kJ = 0.01 * (0.95 * j.firstIce_kg_kg * 332 + 4.1 * 0.05)
+    const hours = (heat_kJ * 1000) / (0.02 * 2.56) / 3600
+    expect(Math.abs((settle_h?.[1] ?? 0) / hours - 1)).toBeLessThan(0.02)
+    expect(solidAt(2, 1).settle_h).toBeNull()
+    expect(solidifying(water, 0, jump(water, 0, -6), 2, vial).settle_h?.[1]).toBeCloseTo(
+      (0.95 * jump(water, 0, -6).firstIce_kg_kg * 333.406 * 10) / (0.02 * 1.9974807) / 3600,
+      5,
+    )
   })
 
   test('a product above its freezing point cools first', () => {
