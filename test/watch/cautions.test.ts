@@ -220,6 +220,18 @@ test('nobody is told to stop the cold of stock that is meant to be frozen', () =
   )
 })
 
+test('nobody is told that ice is liquid, or that liquid is ice', () => {
+  fc.assert(
+    fc.property(situations, (situation) => {
+      fc.pre(situation.standing !== 'Turned')
+      const keys = cautionsFor(situation, table)
+      if (situation.phase === 'frozen') expect(keys).not.toContain('meant-frozen-liquid')
+      if (situation.phase === 'liquid') expect(keys).not.toContain('intended-frozen')
+    }),
+    anythingGoesWrong,
+  )
+})
+
 test('every row is reached by some situation', () => {
   const reached = new Set<string>()
   for (const situation of fc.sample(situations, { numRuns: 20_000, seed: 1 }))
