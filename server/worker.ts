@@ -224,17 +224,14 @@ const tick = (now_ms: number): void => {
   save(estimates, Date.now())
 }
 
-const answer = (message: Extract<ToWatch, { kind: 'ask' }>): void => {
-  const index = plan.itemIndex(message.item)
-  const group = index < 0 ? null : plan.groupOfItem(message.item)
+const answerTo = ({ item, what, now_ms }: Extract<ToWatch, { kind: 'ask' }>) => {
+  const index = plan.itemIndex(item)
+  const group = index < 0 ? null : plan.groupOfItem(item)
   const state = group === null ? undefined : states.get(group.id)
-  if (group === null || state === undefined)
-    return post({ kind: 'answer', id: message.id, value: null })
-  const value =
-    message.what === 'curves'
-      ? curvesOf(state, index, plan, message.now_ms)
-      : outlookOf(state, index, plan, message.now_ms, sheet_h)
-  post({ kind: 'answer', id: message.id, value })
+  if (state === undefined) return null
+  return what === 'curves'
+    ? curvesOf(state, index, plan, now_ms)
+    : outlookOf(state, index, plan, now_ms, sheet_h)
 }
 
 restore()
@@ -258,7 +255,7 @@ port.on('message', (message: ToWatch) => {
       if (message.upTo > offset) catchUp(message.upTo)
       return tick(message.now_ms)
     case 'ask':
-      return answer(message)
+      return post({ kind: 'answer', id: message.id, value: answerTo(message) })
     case 'stop':
       savedAt_ms = 0
       save([], Date.now())
