@@ -7,7 +7,9 @@ import {
   PointElement,
 } from 'chart.js'
 import { drawFrame, drawHead, drawScale, scaleWidth } from './heads.js'
-import { drawFeet, drawFold, drawLane, drawPinned, drawTexts } from './lanePaint.js'
+import { drawFeet } from './laneFeet.js'
+import { drawFold, drawLane } from './laneMarks.js'
+import { drawPinned, drawTexts } from './laneTexts.js'
 import { drawPractice } from './pen.js'
 import { type Board, edges, type Scene, scale_K } from './scene.js'
 import { drawIsobaths, drawLine, drawLineLabels, drawWater } from './water.js'

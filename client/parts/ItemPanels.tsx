@@ -1,9 +1,9 @@
 import { useSignal } from '@preact/signals'
 import type { ItemCurves, ItemTrail, ItemView, Snapshot } from '../../config/schema/api.js'
-import { celsius, chance, clock, interval, kelvin, num, signed, when } from '../format.js'
+import { celsius, chance, clock, interval, kelvin, signed, when } from '../format.js'
 import { markOf } from '../shown.js'
 import { say, wordFor } from '../words.js'
-import { Chip, Mark } from './Marks.js'
+import { Mark } from './Marks.js'
 import type { Asked } from './useAsked.js'
 
 type Zoned = { readonly now_ms: number; readonly zone: string }
@@ -242,16 +242,3 @@ export const NeverSaid = ({ item }: { item: ItemView }) => (
     </p>
   </section>
 )
-
-export const StandingChip = ({
-  item,
-  policy,
-  text,
-}: {
-  item: ItemView
-  policy: Snapshot['site']['policy']
-  text: string
-}) => <Chip kind={markOf(item, policy)} text={text} size={40} />
-
-export const figureOf = (value: number | null, digits = 1): string =>
-  value === null ? '–' : num(value, digits)

@@ -1,6 +1,6 @@
 import { effect, useComputed, useSignal } from '@preact/signals'
 import { useEffect, useRef } from 'preact/hooks'
-import type { ItemReadings, ItemView } from '../../config/schema/api.js'
+import type { ItemView } from '../../config/schema/api.js'
 import { api, remedyOf } from '../api.js'
 import { readColours } from '../chart/tokens.js'
 import { clock, clockMinute, num, offset } from '../format.js'
@@ -10,82 +10,13 @@ import { type Picture, stale } from '../site.js'
 import { theme } from '../theme.js'
 import { say } from '../words.js'
 import { ReadingsTable } from './ReadingsTable.js'
+import { ahead_ms, behind_ms, minute_ms, panned, type Span, zoomed } from './span.js'
+import { TimeLegend } from './TimeLegend.js'
 import { useAsked } from './useAsked.js'
 import { useFontsLoaded, useWidth } from './useCanvasBox.js'
 
-const minute_ms = 60_000
-/** What is seen at first: the last hour and a half, and as far ahead as the forecast reaches. */
-const behind_ms = 90 * minute_ms
-const ahead_ms = 40 * minute_ms
-const narrowest_ms = 5 * minute_ms
-const widest_ms = 400 * 86_400_000
 /** Points asked for: more than a screen has pixels would not be seen. */
 const points = 1500
-
-/** Null follows the clock; a span stays where somebody put it. */
-type Span = { readonly from_ms: number; readonly until_ms: number } | null
-
-const zoomed = (span: { from_ms: number; until_ms: number }, factor: number) => {
-  const wide = Math.max(narrowest_ms, Math.min(widest_ms, (span.until_ms - span.from_ms) * factor))
-  const middle = (span.from_ms + span.until_ms) / 2
-  return { from_ms: middle - wide / 2, until_ms: middle + wide / 2 }
-}
-
-const panned = (span: { from_ms: number; until_ms: number }, share: number) => {
-  const by = (span.until_ms - span.from_ms) * share
-  return { from_ms: span.from_ms + by, until_ms: span.until_ms + by }
-}
-
-const Legend = ({ readings }: { readings: ItemReadings | null }) => {
-  const placements = new Set(readings?.probes.map((p) => p.placement))
-  return (
-    <ul class="keys">
-      {[...placements].map((placement) => (
-        <li key={placement}>
-          <svg width="26" height="12" aria-hidden="true">
-            {placement === 'in-buffer' ? (
-              <rect
-                x="9"
-                y="2"
-                width="8"
-                height="8"
-                fill="var(--sheet)"
-                stroke="var(--ink)"
-                stroke-width="1.5"
-              />
-            ) : (
-              <g stroke="var(--ink)" fill="var(--ink)">
-                <path d="M0 6H26" stroke-width="1.3" />
-                <circle cx="13" cy="6" r={placement === 'in-air' ? 2 : 3} />
-              </g>
-            )}
-          </svg>
-          {say(`trace.${placement}`)}
-        </li>
-      ))}
-      <li>
-        <svg width="26" height="12" aria-hidden="true">
-          <rect y="1" width="26" height="10" fill="var(--mag-2)" opacity=".35" />
-          <path d="M0 6H26" stroke="var(--mag)" stroke-width="2.4" />
-        </svg>
-        {say('trace.estimate')}
-      </li>
-      <li>
-        <svg width="26" height="12" aria-hidden="true">
-          <path d="M0 6H26" stroke="var(--mag)" stroke-width="2" stroke-dasharray="6 4" />
-        </svg>
-        {say('trace.forecast')}
-      </li>
-      <li>
-        <svg width="22" height="12" aria-hidden="true">
-          <rect width="22" height="12" fill="none" stroke="var(--rule)" />
-          <path d="M2 10L10 2M10 10L18 2" stroke="var(--rule)" />
-        </svg>
-        {say('trace.gap')}
-      </li>
-    </ul>
-  )
-}
 
 /** What was read and what the product is reckoned to be, over time; the same as a table. */
 export const TimeFigure = ({ item, known }: { item: ItemView; known: Picture }) => {
@@ -309,7 +240,7 @@ export const TimeFigure = ({ item, known }: { item: ItemView; known: Picture }) 
             : say('chance.rests', { basis: item.verdict.chance.basis.replace(/\.$/, '') })}
         </p>
       </div>
-      {!table.value && <Legend readings={readings} />}
+      {!table.value && <TimeLegend readings={readings} />}
       <p class="unseen" aria-live="polite">
         {span.value === null ? '' : described}
       </p>

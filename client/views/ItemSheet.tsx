@@ -11,7 +11,7 @@ import { useAsked } from '../parts/useAsked.js'
 import { follow, go } from '../route.js'
 import { isPhone } from '../screen.js'
 import { nameAndCount, standingWords } from '../sentences.js'
-import { isAsIntended, marginU_K, markOf, shortPlace } from '../shown.js'
+import { isAsIntended, marginU_K, markOf } from '../shown.js'
 import { cautions, itemById, now_ms, type Picture, picture, stale } from '../site.js'
 import { say } from '../words.js'
 
@@ -189,6 +189,3 @@ export const ItemSheet = ({ id }: { id: string }) => {
     )
   return <Sheet key={id} item={item} known={known} />
 }
-
-export const placeTitle = (item: ItemView): string =>
-  `${item.storageUnit} ${shortPlace(item.position)}`
