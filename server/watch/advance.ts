@@ -1,10 +1,11 @@
 import { airSpeaks, heldTo } from './air.js'
-import { type Drive, H, own, perSlot, Δ, Λ } from './estimate.js'
+import { type Drive, H, own, perSlot, skinShare, Δ, Λ } from './estimate.js'
 import { at, correct, type Gauss } from './gauss.js'
 import { aliveAfter, exposed } from './hazard.js'
 import { enthalpy_kJ_kg, heatCapacity_kJ_kgK, type Matter, temperature_C } from './matter.js'
 import { type Group, type Plan, type PlannedItem, valueAt } from './plan.js'
 import { type Carried, carried, normalised, thinned, turnedWithin } from './rivals.js'
+import { slotPrior } from './slots.js'
 import { started } from './start.js'
 import type { Branch, Core, ItemTrack, UnitTrack } from './state.js'
 import { drift, spreadOfPosition_K } from './surroundings.js'
@@ -123,7 +124,8 @@ export type Advanced = {
   readonly drive: Drive
 }
 
-const noDrive = (plan: Plan, item: PlannedItem): Drive => ({
+const noDrive = (plan: Plan, item: PlannedItem, matter: Matter): Drive => ({
+  slots: item.slots.map((s) => slotPrior(plan, s, matter.gradient)),
   dt_s: 0,
   base0_C: 0,
   baseMean_C: 0,
@@ -192,7 +194,7 @@ export function advance(
   let track = core.items[local]!
   let result: readonly Carried[] = []
   let forked: readonly Carried[] = []
-  let drive = noDrive(plan, item)
+  let drive = noDrive(plan, item, item.matter[track.matter]!.value)
   const unitOf = (index: number) => core.units[group.localUnit.get(index)!]!
   if (track.t_ms < 0) {
     const start_ms = Math.max(item.placed_ms, item.parent < 0 ? 0 : item.parentUntil_ms)
@@ -304,7 +306,9 @@ const liquidAhead_C = (bank: readonly Branch[], matter: Matter, drive: Drive): n
   if (top === null) return null
   const T = temperature_C(matter, false, top.g[H]!)
   const k =
-    (matter.coupling_kW_kgK * Math.exp(top.g[Λ]!)) / heatCapacity_kJ_kgK(matter, false, top.g[H]!)
+    (matter.coupling_kW_kgK * Math.exp(top.g[Λ]!)) /
+    (1 + skinShare * matter.gradient) /
+    heatCapacity_kJ_kgK(matter, false, top.g[H]!)
   const env = drive.baseMean_C + top.g[Δ]!
   return env + (T - env) * Math.exp(-k * drive.dt_s)
 }

@@ -1,7 +1,7 @@
 import type { Policy } from '../../config/schema/site.js'
 import type { Interval } from '../../config/schema/verdict.js'
 import { exposureAhead, type Heading } from './forecast.js'
-import { chanceOver } from './hazard.js'
+import { chancesOver } from './hazard.js'
 import type { Matter } from './matter.js'
 import type { PlannedItem } from './plan.js'
 import type { ItemTrack } from './state.js'
@@ -30,11 +30,9 @@ export function chancesOn(
   const ahead = exposureAhead(matter, heading, policy.poisedHorizon_h)
   const survived = measured ? track.exposure : matter.noExposure
   const { count } = item.item
-  const any = chanceOver(matter, survived, ahead.horizon, count)
   return {
-    one: count === 1 ? any : chanceOver(matter, survived, ahead.horizon, 1),
-    any,
-    any_1h: chanceOver(matter, survived, ahead.hour, count),
+    ...chancesOver(matter, survived, ahead.horizon, count),
+    any_1h: chancesOver(matter, survived, ahead.hour, count).any,
     horizon_h: policy.poisedHorizon_h,
   }
 }

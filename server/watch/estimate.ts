@@ -1,5 +1,6 @@
 import { at, carryCovariance, type Gauss, mostUnknowns } from './gauss.js'
 import { heatCapacity_kJ_kgK, ice_kg_kg, type Matter, temperature_C } from './matter.js'
+import type { SlotPrior } from './slots.js'
 
 /**
  * The unknowns of an item on one branch, in this order:
@@ -38,6 +39,8 @@ export type Drive = {
   readonly outside: readonly boolean[]
   /** Surroundings as the inside of the body has felt them, over its own time of conduction, °C. */
   readonly felt_C: number
+  /** What was believed of each probe at first: what is learned of it is forgotten again. */
+  readonly slots: readonly SlotPrior[]
 }
 
 const F = new Float64Array(mostUnknowns * mostUnknowns)
@@ -53,7 +56,12 @@ const wander_K2_s = 1.5e-6
 const couplingNoise = 0.06
 /** Slow drifts of coupling (frost, stacking) and of what the probe touches, per s. */
 const lambdaDrift_s = 1e-8
-const shareDrift_s = 2e-9
+/**
+ * How long what was learned of a probe's bias and of what it touches is relied on, s. Model and
+ * reading differ by more than noise, so that hours of agreement would else pass for certainty.
+ */
+const biasKept_s = 6 * 3600
+const shareKept_s = 3 * 3600
 
 /** Slush has hardly a gradient inside; what is nearly solid conducts like any body. */
 const slushGradient = 0.25
@@ -66,6 +74,22 @@ export function inSlush(matter: Matter, h: number): number {
   const x = (share - slushUntil) / (solidFrom - slushUntil)
   return slushGradient + (1 - slushGradient) * Math.min(1, Math.max(0, x))
 }
+
+/** How much of the inner gradient lies between the mean and the skin. */
+export const skinShare = 0.8
+
+/**
+ * What ice changes in what a probe touches. Inside: the share of the gradient that is left. On the
+ * wall: by how much the share of the product grows, its skin being as warm as its mean in slush.
+ */
+export function touchOnIce(matter: Matter, onIce: boolean, outside: boolean, h: number): number {
+  if (!onIce) return 1
+  const left = inSlush(matter, h)
+  return outside ? 1 + skinShare * matter.gradient * (1 - left) : left
+}
+
+/** No probe feels more of the product than this, gradients inside it included. */
+const shareMost = 1.15
 
 /** How the new enthalpy leans on the surroundings: what a jump of them would have moved. */
 export const leaning = { h: 0, sensor: new Float64Array(8) }
@@ -83,7 +107,9 @@ export const leaning = { h: 0, sensor: new Float64Array(8) }
 export function carry(g: Gauss, n: number, matter: Matter, onIce: boolean, drive: Drive): void {
   const { dt_s } = drive
   const δ0 = g[Δ]!
-  const coupling = matter.coupling_kW_kgK * Math.exp(g[Λ]!)
+  // The way from the mean to the skin is part of the coupling; in slush there is none.
+  const skin = 1 + skinShare * matter.gradient * (onIce ? slushGradient : 1)
+  const coupling = (matter.coupling_kW_kgK * Math.exp(g[Λ]!)) / skin
   const env = drive.baseMean_C + δ0
   const h0 = g[H]!
   const T0 = temperature_C(matter, onIce, h0)
@@ -137,8 +163,8 @@ export function carry(g: Gauss, n: number, matter: Matter, onIce: boolean, drive
     const b = biasOf(slot)
     const τ = drive.tau_s[slot]!
     const outside = drive.outside[slot]!
-    const soft = onIce && !outside ? inSlush(matter, h) : 1
-    const rest = (1 - g[a]!) * soft
+    const soft = touchOnIce(matter, onIce, outside, h)
+    const rest = outside ? 1 - g[a]! * soft : (1 - g[a]!) * soft
     // A gradient inside follows the surroundings slowly: a door must not move it at once.
     const env0 = outside ? drive.base0_C + δ0 : drive.felt_C
     const env1 = outside ? drive.base1_C + δ1 : drive.felt_C
@@ -156,11 +182,16 @@ export function carry(g: Gauss, n: number, matter: Matter, onIce: boolean, drive
     F[s * n + Λ] = w1 * T1h * toΛ
     F[s * n + a] = soft * (w1 * (T - env1) + w0 * (T0 - env0))
     F[s * n + s] = f
-    F[a * n + a] = 1
-    F[b * n + b] = 1
-    q[a] = shareDrift_s * dt_s
+    const prior = drive.slots[slot]!
+    const keepA = Math.exp(-dt_s / shareKept_s)
+    const keepB = Math.exp(-dt_s / biasKept_s)
+    F[a * n + a] = keepA
+    F[b * n + b] = keepB
+    q[a] = prior.shareVar * (1 - keepA * keepA)
     q[s] = 0
-    q[b] = 0
+    q[b] = prior.biasVar_K2 * (1 - keepB * keepB)
+    g[a] = Math.min(shareMost, prior.share + keepA * (g[a]! - prior.share))
+    g[b] = keepB * g[b]!
     leaning.sensor[slot] = F[s * n + Δ]!
     g[s] = sensor
   }

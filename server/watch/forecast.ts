@@ -1,5 +1,6 @@
-import { H } from './estimate.js'
-import { type Ahead, exposed } from './hazard.js'
+import type { Ahead } from '../physics/nucleation.js'
+import { H, skinShare } from './estimate.js'
+import { exposed } from './hazard.js'
 import { heatCapacity_kJ_kgK, type Matter, temperature_C } from './matter.js'
 import type { Estimate } from './reckon.js'
 import type { ItemTrack, UnitTrack } from './state.js'
@@ -43,7 +44,9 @@ export function headingOf(
     u_K: Math.hypot(estimate.u_K, matter.uFreezing_K),
     env_C,
     env_u_K: Math.hypot(estimate.env_u_K, leastEnv_u_K),
-    tau_s: heatCapacity_kJ_kgK(matter, false, h) / (matter.coupling_kW_kgK * Math.exp(λ)),
+    tau_s:
+      (heatCapacity_kJ_kgK(matter, false, h) * (1 + skinShare * matter.gradient)) /
+      (matter.coupling_kW_kgK * Math.exp(λ)),
     tauRelU: matter.couplingRelU,
   }
 }

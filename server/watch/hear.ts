@@ -6,14 +6,17 @@ import { type Matter, temperature_C } from './matter.js'
 import { type Group, type Plan, valueAt } from './plan.js'
 import {
   type Carried,
+  credible,
   liquidSeen,
   normalised,
   type Sight,
+  type Stretch,
   seen,
   sumLogs,
   thinned,
   weigh,
 } from './rivals.js'
+import { slotPrior } from './slots.js'
 import { bankOf } from './start.js'
 import type { Branch, Core, Fork, ItemTrack, SlotTrack } from './state.js'
 import { jumpOf } from './surroundings.js'
@@ -61,6 +64,12 @@ const liquidLog = (
   return best < 0 ? null : told[best]!.branch.w - all[best]!.branch.w
 }
 
+/** A story that has just stretched bias or share further than is credible weighs less. */
+const judgedBy = (now: Branch, before: Branch, stretch: Stretch): Branch => {
+  const loss = credible(now.g, stretch) - credible(before.g, stretch)
+  return loss < 0 ? { ...now, w: now.w + loss } : now
+}
+
 /** A bank that has seen a reading, the log density it gave it, and the best story's z². */
 const tell = (
   all: readonly Carried[],
@@ -68,16 +77,21 @@ const tell = (
   sight: Sight,
   base_C: number,
   jump: ReturnType<typeof jumpOf>,
+  stretch: Stretch,
 ): Told => {
   let stirred = 0
   const told = all.map((c) => {
     if (c.branch.kind === 'ice') {
       const by = weigh(c.branch, n, sight)
-      return { branch: seen(c.branch, n, sight, by), z2: by.z * by.z }
+      const branch = seen(c.branch, n, sight, by)
+      return { branch: judgedBy(branch, c.branch, stretch), z2: by.z * by.z }
     }
     const { branch, calm, share } = liquidSeen(c, n, sight, base_C, jump)
     stirred = Math.max(stirred, share * Math.exp(c.branch.w))
-    return { branch, z2: calm.z * calm.z * (1 - share) + share }
+    return {
+      branch: judgedBy(branch, c.branch, stretch),
+      z2: calm.z * calm.z * (1 - share) + share,
+    }
   })
   const reference = liquidLog(all, told)
   const even = told.map((x, i) => {
@@ -244,7 +258,8 @@ export function hearOwn(
   const noise2 = leastNoise_K ** 2 + (flicker * probe.given.accuracy_K) ** 2 + last.noise_K2 * 0.5
   const R_K2 =
     noise2 * last.scale + resolution ** 2 / 12 + (kind === 'sibling' ? siblingNoise_K ** 2 : 0)
-  const sight: Sight = { slot: k, y_C, R_K2, t_ms }
+  const apart_s = last.t_ms < 0 ? 3600 : (t_ms - last.t_ms) / 1000
+  const sight: Sight = { slot: k, y_C, R_K2, t_ms, apart_s }
   const all = moved.carried
   const foreseen = expectation(all, n, sight)
   const stepExpected = last.raw_C === null ? 0 : foreseen.expected_C - (last.trusted_C ?? y_C)
@@ -322,7 +337,15 @@ export function hearOwn(
   const unit = plan.units[track.unit]!
   const matter = item.matter[track.matter]!.value
   const jump = jumpOf(unit, t_ms, track.based, moved.drive.dt_s)
-  const told = tell(all, n, sight, track.base_C, jump)
+  const prior = slotPrior(plan, item.slots[k]!, matter.gradient)
+  const stretch: Stretch = {
+    slot: k,
+    bias_K: 1.2 * probe.given.accuracy_K + 2 * matter.uFreezing_K + 0.02,
+    biasSoft_K: 0.3 * probe.given.accuracy_K + 0.02,
+    share: prior.share,
+    shareReach: 2.5 * Math.sqrt(prior.shareVar),
+  }
+  const told = tell(all, n, sight, track.base_C, jump, stretch)
   const scale = Math.min(
     scaleRange[1],
     Math.max(scaleRange[0], last.scale * (1 + scaleGain * (Math.min(told.z2, 6) - 1))),
@@ -339,7 +362,7 @@ export function hearOwn(
   let fork = track.fork
   let forkBank = moved.forked.map((c) => c.branch)
   if (fork !== null && fork.slot === k) {
-    const inFork = tell(moved.forked, n, sight, track.base_C, jump)
+    const inFork = tell(moved.forked, n, sight, track.base_C, jump, stretch)
     const { odds, back } = forkOdds(fork, told.log, inFork.log, y_C, R_K2)
     if (back) {
       // It reads the item again: the story that had set it aside is the better one throughout.
@@ -360,7 +383,7 @@ export function hearOwn(
       )
   } else if (fork !== null) {
     // Another probe of the item saw this: both stories of the forked one hear it.
-    const inFork = tell(moved.forked, n, sight, track.base_C, jump)
+    const inFork = tell(moved.forked, n, sight, track.base_C, jump, stretch)
     fork = { ...fork, odds: fork.odds + inFork.log - told.log }
     forkBank = [...inFork.bank]
   } else if (kind !== 'sibling') {

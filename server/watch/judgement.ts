@@ -13,7 +13,7 @@ import { type Chances, chancesOn, isPoised } from './chance.js'
 import { evidenceOf, placeAt, type Witnessed } from './evidence.js'
 import { whyOf } from './explain.js'
 import { crossing_h, type Heading, headingOf } from './forecast.js'
-import { chanceOver } from './hazard.js'
+import { chancesOver } from './hazard.js'
 import { turnedProbability } from './hear.js'
 import { ifItFreezes } from './ifItFreezes.js'
 import type { Matter } from './matter.js'
@@ -147,15 +147,16 @@ const countsOf = (v: View): { any: Interval; count: Interval } => {
   const { count } = v.item.item
   const { exposure } = v.track
   const watched = isMeasured(v.best) || (v.track.called !== null && !v.track.called.reckoned)
-  const one = chanceOver(v.matter, v.matter.noExposure, [{ exposure, weight: 1 }], 1)
+  const lived = (n: number) =>
+    chancesOver(v.matter, v.matter.noExposure, [{ exposure, weight: 1 }], n)
   const p = v.track.called !== null && !v.track.called.reckoned ? 1 : v.p
   if (!watched) {
     if (v.track.called?.placedAsIce) return { any: [1, 1, 1], count: [count, count, count] }
-    const any = chanceOver(v.matter, v.matter.noExposure, [{ exposure, weight: 1 }], count)
+    const { one, any } = lived(count)
     return { any, count: one.map((q) => Math.round(q * count)) as Interval }
   }
   if (v.track.called?.placedAsIce) return { any: [1, 1, 1], count: [count, count, count] }
-  const rest = chanceOver(v.matter, v.matter.noExposure, [{ exposure, weight: 1 }], count - 1)
+  const { one, any: rest } = lived(count - 1)
   return {
     any: rest.map((q) => 1 - (1 - p) * (1 - q)) as Interval,
     count: one.map((q) => Math.round(p + q * (count - 1))) as Interval,

@@ -2,10 +2,11 @@ import type { Container, Product } from '../../config/schema/product.js'
 import type { Learned } from '../../config/schema/site.js'
 import { equilibriumFrom, liquidTemperature_C } from '../physics/branches.js'
 import { coldestLiquid_C, warmest_C } from '../physics/constants.js'
+import { area_m2, couplingOf, fillVolume_m3, wallShare_kJ_kgK } from '../physics/container.js'
 import { endOfFreezing_C, hEquilibrium, hLiquid, iceAt } from '../physics/curves.js'
+import { type Exposure, type Kinetics, kineticsOf, noExposure } from '../physics/nucleation.js'
 import { type Substance, substanceOf } from '../physics/substance.js'
 import { gradientOf, settlingOf } from './gradient.js'
-import { type Kinetics, kineticsOf } from './hazard.js'
 import type { Library } from './plan.js'
 
 /** One monotone function of enthalpy on an even grid. */
@@ -41,7 +42,7 @@ export type Matter = {
   readonly liquid: Table
   readonly ice: Table
   readonly kinetics: Kinetics
-  readonly noExposure: readonly number[]
+  readonly noExposure: Exposure
 }
 
 /** The tables of the ice branch begin here; colder, the slope of their end goes on. */
@@ -115,38 +116,27 @@ export function ice_kg_kg(m: Matter, h: number): number {
   return m.ice.ice_kg_kg[k]! + f * (m.ice.ice_kg_kg[k + 1]! - m.ice.ice_kg_kg[k]!)
 }
 
-const area_m2 = (c: Container): number | null => {
-  const { radius_m: r, height_m: h } = c
-  switch (c.shape) {
-    case 'cylinder':
-      return r === undefined || h === undefined ? null : 2 * Math.PI * r * (r + h)
-    case 'sphere':
-      return r === undefined ? null : 4 * Math.PI * r * r
-    case 'slab':
-      // Both faces of a slab of water-like stuff of that thickness.
-      return c.thickness_m === undefined ? null : (2 * c.fill_kg) / (1000 * c.thickness_m)
-    case 'box': {
-      const { length_m: l, width_m: w, height_m: z } = c
-      return l === undefined || w === undefined || z === undefined
-        ? null
-        : 2 * (l * w + l * z + w * z)
-    }
-    default:
-      return null
+/** Area of a container whose shape is told with all its lengths, m². */
+const areaOf_m2 = (c: Container): number | null => {
+  const lengths = {
+    cylinder: [c.radius_m, c.height_m],
+    sphere: [c.radius_m],
+    slab: [c.thickness_m],
+    box: [c.length_m, c.width_m, c.height_m],
   }
+  return c.shape === undefined || lengths[c.shape].includes(undefined) ? null : area_m2(c)
 }
 
 /** Where neither UA nor a film is given: still air over a compact body of water [common practice]. */
 const stillAir_W_m2K = 8
 const compactArea_m2 = (fill_kg: number): number => 6 * (fill_kg / 1000) ** (2 / 3)
 
-const couplingOf = (c: Container, learned: Learned | null): { UA_W_K: number; relU: number } => {
-  if (learned !== null) return { UA_W_K: learned.UA_W_K, relU: learned.relU }
-  if (c.UA_W_K !== undefined) return { UA_W_K: c.UA_W_K, relU: c.UA_relU }
-  const area = area_m2(c) ?? compactArea_m2(c.fill_kg)
-  if (c.h_W_m2K !== undefined) return { UA_W_K: c.h_W_m2K * area, relU: c.UA_relU }
-  return { UA_W_K: stillAir_W_m2K * area, relU: 0.5 }
-}
+const coupledBy = (c: Container, learned: Learned | null): { UA_W_K: number; relU: number } =>
+  learned ??
+  couplingOf(c) ?? {
+    UA_W_K: stillAir_W_m2K * (areaOf_m2(c) ?? compactArea_m2(c.fill_kg)),
+    relU: 0.5,
+  }
 
 /** Least relative uncertainty of a coupling: air moves differently from day to day. */
 const leastRelU = 0.1
@@ -191,7 +181,7 @@ const make = (
 ): Matter => {
   const substance = substanceOf(product, library.solutes)
   const { fill_kg } = container
-  const wall_kJ_kgK = container.wall_kJ_K / fill_kg
+  const wall_kJ_kgK = wallShare_kJ_kgK(container)
   const f = substance.freezingPoint_C
   const liquidAt = (T: number) => hLiquid(substance, T) + wall_kJ_kgK * T
   const hFreezing = liquidAt(Math.max(f, coldestLiquid_C))
@@ -202,8 +192,13 @@ const make = (
   const ice = evenly(hEquilibrium(substance, coldest_C) + wall_kJ_kgK * coldest_C, hFreezing, (h) =>
     equilibriumFrom(substance, wall_kJ_kgK, h),
   )
-  const { UA_W_K, relU } = couplingOf(container, learned)
-  const kinetics = kineticsOf(product, fill_kg, library, frozenBefore)
+  const { UA_W_K, relU } = coupledBy(container, learned)
+  const kinetics = kineticsOf(
+    library.priors,
+    product.nucleation,
+    fillVolume_m3(container),
+    frozenBefore,
+  )
   return {
     substance,
     freezing_C: f,
@@ -215,11 +210,11 @@ const make = (
     couplingRelU: Math.max(leastRelU, relU),
     UA_W_K,
     settle_s: settlingOf(container),
-    gradient: gradientOf(container, UA_W_K, area_m2(container)),
+    gradient: gradientOf(container, UA_W_K, areaOf_m2(container)),
     solidIce_kg_kg: iceAt(substance, Math.max(-20, endOfFreezing_C(substance))),
     liquid,
     ice,
     kinetics,
-    noExposure: kinetics.exponents.map(() => 0),
+    noExposure: noExposure(kinetics),
   }
 }

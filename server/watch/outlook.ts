@@ -1,7 +1,8 @@
 import type { Fan } from '../../config/schema/api.js'
 import { ahead_C, sides } from './forecast.js'
-import { chanceOver, exposed } from './hazard.js'
+import { chancesOver, exposed } from './hazard.js'
 import { viewOf } from './judgement.js'
+import type { Matter } from './matter.js'
 import { type Plan, valueAt } from './plan.js'
 import type { GroupState } from './state.js'
 
@@ -62,7 +63,7 @@ export function outlookOf(
     }
     before_s = s
     const ahead = paths.map((p) => ({ exposure: p.E, weight: p.weight }))
-    const [l, m, h] = chanceOver(v.matter, survived, ahead, v.item.item.count)
+    const [l, m, h] = chancesOver(v.matter, survived, ahead, v.item.item.count).any
     chance.push([t_ms, l, m, h])
   }
   return { margin, forecast, chance }
@@ -72,6 +73,12 @@ export function outlookOf(
 const tintChances = [0.01, 0.1, 0.5] as const
 /** Deeper than this no tint begins, K. */
 const deepest_K = 38
+/** Halvings of that range: 2 mK are far below a pixel. */
+const halvings = 14
+
+type Tints = readonly [number | null, number | null, number | null]
+/** Of one product in one container they hang on the count alone; screens ask for them every second. */
+const kept = new WeakMap<Matter, Map<string, Tints>>()
 
 /**
  * Margins at which the chance that at least one of the batch turns within an hour reaches 1, 10 and
@@ -79,27 +86,32 @@ const deepest_K = 38
  *
  * @returns K, negative; null where no depth reaches it
  */
-export function tintsOf(
-  plan: Plan,
-  item: string | number,
-  t_ms: number,
-): readonly [number | null, number | null, number | null] {
+export function tintsOf(plan: Plan, item: string | number, t_ms: number): Tints {
   const index = typeof item === 'number' ? item : plan.itemIndex(item)
   const planned = plan.items[index]!
   const m = valueAt(planned.matter, t_ms)
   const side = valueAt(plan.policy, t_ms).chanceQuantile === 'high' ? 2 : 1
-  const count = planned.item.count
+  const { count } = planned.item
+  const known = kept.get(m) ?? new Map<string, Tints>()
+  kept.set(m, known)
+  const key = `${count} ${side}`
+  const found = known.get(key) ?? tintsFor(m, count, side)
+  known.set(key, found)
+  return found
+}
+
+const tintsFor = (m: Matter, count: number, side: 1 | 2): Tints => {
   const at = (depth_K: number) =>
-    chanceOver(
+    chancesOver(
       m,
       m.noExposure,
       [{ exposure: exposed(m, m.noExposure, depth_K, depth_K, 3600), weight: 1 }],
       count,
-    )[side]!
+    ).any[side]
   const depthOf = (chance: number): number | null => {
     if (at(deepest_K) < chance) return null
     let [low, high] = [0, deepest_K]
-    for (let k = 0; k < 24; k++) {
+    for (let k = 0; k < halvings; k++) {
       const middle = (low + high) / 2
       if (at(middle) < chance) low = middle
       else high = middle

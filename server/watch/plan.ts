@@ -9,9 +9,9 @@ import type {
   SiteFile,
   StorageUnit,
 } from '../../config/schema/site.js'
+import type { Priors } from '../physics/nucleation.js'
 import type { SoluteTable } from '../physics/solution.js'
 import { groupsOf } from './groups.js'
-import type { Priors } from './hazard.js'
 import { type Matter, matterOf } from './matter.js'
 
 /** What the program ships as data and the watch needs. */

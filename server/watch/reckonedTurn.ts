@@ -1,5 +1,5 @@
 import { ownSpeaks } from './advance.js'
-import { chanceOver } from './hazard.js'
+import { chancesOver } from './hazard.js'
 import type { Plan, PlannedItem } from './plan.js'
 import type { Estimate } from './reckon.js'
 import type { Called, ItemTrack } from './state.js'
@@ -31,6 +31,7 @@ export function reckonedTurn(
   })
   if (placed >= sure) return call(true)
   if (estimate.T_C < surelyIce_C - estimate.u_K) return call(false)
-  const [low] = chanceOver(m, m.noExposure, [{ exposure: track.exposure, weight: 1 }], 1)
+  const { one } = chancesOver(m, m.noExposure, [{ exposure: track.exposure, weight: 1 }], 1)
+  const [low] = one
   return low >= sure ? call(false) : null
 }

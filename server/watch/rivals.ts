@@ -1,4 +1,14 @@
-import { biasOf, carry, type Drive, H, inSlush, leaning, sensorOf, shareOf, Δ } from './estimate.js'
+import {
+  biasOf,
+  carry,
+  type Drive,
+  H,
+  leaning,
+  sensorOf,
+  shareOf,
+  touchOnIce,
+  Δ,
+} from './estimate.js'
 import { at, correct, type Gauss, mix, varianceOfSum } from './gauss.js'
 import { heatCapacity_kJ_kgK, type Matter, temperature_C } from './matter.js'
 import type { Branch } from './state.js'
@@ -136,7 +146,8 @@ export function turnedWithin(
     const s = sensorOf(slot)
     const a = g[shareOf(slot)]!
     const outside = drive.outside[slot]!
-    const rest = (1 - a) * (outside ? 1 : inSlush(matter, h))
+    const soft = touchOnIce(matter, true, outside, h)
+    const rest = outside ? 1 - a * soft : (1 - a) * soft
     const env_C = outside ? drive.base1_C + g[Δ]! : drive.felt_C
     const target = temperature_C(matter, true, h) * (1 - rest) + rest * env_C
     const was = from_C * a + (1 - a) * env_C
@@ -170,6 +181,8 @@ export type Sight = {
   /** Variance of the reading itself, K². */
   readonly R_K2: number
   readonly t_ms: number
+  /** Time since the reading before, s. */
+  readonly apart_s: number
 }
 
 /** Ice spreads: for a minute or two what the probe touches lags behind (thick or solid foods). */
@@ -182,7 +195,9 @@ const slush_K = 0.08
 const frontOn = (b: Branch, sight: Sight): number => {
   if (b.kind !== 'ice' || b.placedAsIce) return 0
   const age_s = Math.max(0, (sight.t_ms - b.to_ms) / 1000)
-  return (frontShare * b.jump_K * Math.exp(-age_s / front_s)) ** 2
+  // Readings close together see the same front: together they count as one.
+  const alike = Math.max(1, front_s / Math.max(1, sight.apart_s))
+  return (frontShare * b.jump_K * Math.exp(-age_s / front_s)) ** 2 * alike
 }
 
 export type Weighed = {
@@ -207,7 +222,8 @@ export function weigh(b: Branch, n: number, sight: Sight): Weighed {
   const z2 = (innovation * innovation) / S
   const there: Weighed = { z: Math.sqrt(z2), log: logDensity(z2, S), S, R_K2: R, innovation }
   const front2 = frontOn(b, sight)
-  if (front2 < 1e-4) return there
+  // The probe then stands between where it was and the plateau, never above it.
+  if (front2 < 1e-4 || innovation > 0) return there
   const wide2 = (innovation * innovation) / (S + front2)
   const beside = logDensity(wide2, S + front2)
   const log = sumLogs([there.log, beside]) - Math.LN2
@@ -224,6 +240,26 @@ export function seen(b: Branch, n: number, sight: Sight, by: Weighed): Branch {
   correct(g, n, sensorOf(sight.slot), biasOf(sight.slot), by.innovation, S)
   return { ...b, g, w: b.w + by.log }
 }
+
+/** What a probe is vouched for, and what it touches, as far as a story may stretch them. */
+export type Stretch = {
+  readonly slot: number
+  readonly bias_K: number
+  readonly biasSoft_K: number
+  readonly share: number
+  readonly shareReach: number
+}
+
+const beyond = (x: number, reach: number, soft: number): number =>
+  Math.abs(x) <= reach ? 0 : -0.5 * ((Math.abs(x) - reach) / soft) ** 2
+
+/**
+ * Log of how credible a story is that needs this bias and this share. A bias is bounded by the
+ * accuracy of the probe; the Gaussian of the filter alone would let every story buy its way.
+ */
+export const credible = (g: readonly number[], by: Stretch): number =>
+  beyond(g[biasOf(by.slot)]!, by.bias_K, by.biasSoft_K) +
+  beyond(g[shareOf(by.slot)]! - by.share, by.shareReach, by.shareReach / 2.5)
 
 /** Surroundings that jump: how likely within the interval, and how far. */
 export type Jump = {

@@ -2,6 +2,7 @@ import { own, perSlot } from './estimate.js'
 import { at, type Gauss, independent } from './gauss.js'
 import { enthalpy_kJ_kg, heatCapacity_kJ_kgK, temperature_C } from './matter.js'
 import { type Plan, type PlannedItem, type Slot, valueAt } from './plan.js'
+import { slotPrior } from './slots.js'
 import type { Branch, ItemTrack } from './state.js'
 import { spreadOfPosition_K } from './surroundings.js'
 
@@ -10,32 +11,18 @@ const placedAsIce = { freezing: 0.002, other: 0.01 }
 /** Stock meant to be frozen and placed as cold as that. */
 const meantAsIce = 0.999
 
-/** What a probe touches, by its kind: share of the product, and how sure that is (watch.md §4). */
-const share: Record<Slot['kind'], readonly [mean: number, u: number]> = {
-  'in-item': [1, 0.01],
-  witness: [1, 0.01],
-  wall: [0.7, 0.12],
-  sibling: [1, 0.05],
-}
-/** The inner gradient of a large body shows in what a probe inside it touches. */
-const mostGradient = 0.08
-
 /** Prior of the three unknowns of one slot at a product temperature. */
-const slotPrior = (
+const slotStart = (
   plan: Plan,
   slot: Slot,
   gradient: number,
   T_C: number,
   u_K: number,
 ): { mean: number[]; variance: number[] } => {
-  const probe = plan.probes[slot.probe]!
-  const [a, ua] = share[slot.kind]
-  const inside = slot.kind === 'wall' ? 0 : Math.min(mostGradient, gradient / 2)
-  const bias = Math.max(probe.given.accuracy_K / Math.sqrt(3), 0.01)
-  const sibling = slot.kind === 'sibling' ? 0.3 ** 2 : 0
+  const prior = slotPrior(plan, slot, gradient)
   return {
-    mean: [a, T_C, 0],
-    variance: [ua * ua + inside * inside, u_K * u_K + 0.5, bias * bias + sibling],
+    mean: [prior.share, T_C, 0],
+    variance: [prior.shareVar, u_K * u_K + 0.5, prior.biasVar_K2],
   }
 }
 
@@ -81,7 +68,7 @@ export const bankOf = (
     const uh = Math.min(c * u_K, 60)
     const variance = [uh * uh, spread * spread, matter.couplingRelU ** 2]
     for (const slot of item.slots) {
-      const prior = slotPrior(plan, slot, matter.gradient, T, u_K)
+      const prior = slotStart(plan, slot, matter.gradient, T, u_K)
       mean.push(...prior.mean)
       variance.push(...prior.variance)
     }
@@ -131,7 +118,7 @@ const inherited = (
     const mean = [b.g[0]!, b.g[1]!, b.g[2]!]
     const variance = [b.g[at(n, 0, 0)]!, b.g[at(n, 1, 1)]! + 0.3, b.g[at(n, 2, 2)]!]
     for (const slot of item.slots) {
-      const prior = slotPrior(plan, slot, matter.gradient, T, u_K)
+      const prior = slotStart(plan, slot, matter.gradient, T, u_K)
       mean.push(...prior.mean)
       variance.push(...prior.variance)
     }

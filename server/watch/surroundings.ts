@@ -50,7 +50,7 @@ const overAmbient_K = 8
  */
 export function jumpOf(unit: PlannedUnit, t_ms: number, measured: boolean, dt_s: number): Jump {
   const given = valueAt(unit.given, t_ms)
-  const every_s = measured ? 8 * 3600 : 1800
+  const every_s = measured ? 40 * 3600 : 1800
   return {
     chance: Math.min(0.3, 1 - Math.exp(-Math.max(dt_s, 1) / every_s)),
     size_K: measured ? 5 : 9,
