@@ -242,3 +242,23 @@ export function hazard_h(
   const [low, middle, high] = shares.map((p) => 3600 * quantileOfSpread(p))
   return { interval: [low!, middle!, high!], mean: all > 0 ? (3600 * mean) / all : 0 }
 }
+
+/**
+ * Chance that one container is still liquid after an exposure, over all that is believed of κ and b.
+ *
+ *     S = Σ_b Σ_κ w (1 + κE_b/ν)^(−ν)
+ *
+ * @returns 0…1; the mean alone, for the hot path
+ */
+export function stillLiquid(k: Kinetics, exposure: Exposure): number {
+  let alive = 0
+  for (let j = 0; j < k.b.length; j++) {
+    const E = exposure[j] ?? 0
+    for (let i = 0; i < k.rate.length; i++) {
+      const x = (k.rate[i]! * E) / k.nu
+      // Most of the grid is untouched.
+      alive += k.weight[i]! * (x < 1e-12 ? 1 : Math.exp(-k.nu * Math.log1p(x)))
+    }
+  }
+  return alive / k.b.length
+}
