@@ -27,6 +27,8 @@ const page = 5000
 const saveEvery_ms = 10_000
 /** Items made anew for the screen in one tick, beside those with news. */
 const shownPerTick = 400
+/** A tick spends so much on the screen, wall ms; what is left over comes first in the next one. */
+const showFor_ms = 60
 /** A forecast on the Waterline reaches so far. */
 const forecast_h = 0.5
 /** An item sheet's reaches so far. */
@@ -181,6 +183,13 @@ const save = (estimates: readonly Estimate[], wall_ms: number): void => {
   trail = []
 }
 
+/** Is a forecast drawn: at risk, or on its way to its line within the hour? */
+const nearsItsLine = ({ standing, crossing }: Judgement): boolean =>
+  standing === 'Near' ||
+  standing === 'Below' ||
+  standing === 'Poised' ||
+  (crossing.below_h !== null && crossing.below_h[0] < 1)
+
 const judgedAt = (index: number, now_ms: number): Judged | null => {
   const item = plan.items[index]
   const group = item === undefined ? null : plan.groupOfItem(item.id)
@@ -195,7 +204,9 @@ const judgedAt = (index: number, now_ms: number): Judged | null => {
     since_ms,
     announcedTurned_ms,
     track,
-    forecast: outlookOf(state, index, plan, now_ms, forecast_h).margin,
+    forecast: nearsItsLine(judgement)
+      ? outlookOf(state, index, plan, now_ms, forecast_h).margin
+      : [],
     tints_K: tintsOf(plan, index, now_ms),
   }
 }
@@ -212,14 +223,16 @@ const tick = (now_ms: number): void => {
   next = (next + rest) % Math.max(1, plan.items.length)
   const items: Judged[] = []
   const estimates: Estimate[] = []
+  const from_ms = performance.now()
   for (const index of news) {
+    if (performance.now() - from_ms > showFor_ms) break
+    news.delete(index)
     const judged = judgedAt(index, now_ms)
     if (judged === null) continue
     const estimate = history.shown(index, judged.judgement)
     if (estimate !== null) estimates.push(estimate)
     items.push(judged)
   }
-  news.clear()
   if (items.length > 0) post({ kind: 'judged', items })
   save(estimates, Date.now())
 }
