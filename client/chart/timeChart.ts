@@ -59,6 +59,7 @@ export const timeChart = (temperature: HTMLCanvasElement, chanceCanvas: HTMLCanv
           max,
           ticks: {
             ...plain.ticks,
+            autoSkip: false,
             stepSize: step,
             callback: (v) => num(Number(v), step < 1 ? 1 : 0),
           },

@@ -1,4 +1,4 @@
-import { effect, useComputed, useSignal } from '@preact/signals'
+import { effect, type Signal, useComputed, useSignal } from '@preact/signals'
 import { useEffect, useRef } from 'preact/hooks'
 import { scaleWidth } from '../chart/heads.js'
 import { type Fold, type Lane, type LaneRules, lanesOf, layoutLanes } from '../chart/lanes.js'
@@ -35,20 +35,22 @@ const keyOf = (part: Lane | Fold): string => (part.kind === 'lane' ? part.item.i
  * keyboard reach what the canvas shows. Its accessible form is the table twin.
  *
  * @param known  the picture; on a phone of one storage unit only
- * @param near   tells which item is pointed at
+ * @param near    tells which item is pointed at
+ * @param opened  items whose strip somebody opened
  */
 export const WaterlineChart = ({
   known,
   near,
+  opened,
 }: {
   known: Picture
   near: (id: string | null) => void
+  opened: Signal<ReadonlySet<string>>
 }) => {
   const frame = useRef<HTMLDivElement>(null)
   const canvas = useRef<HTMLCanvasElement>(null)
   const box = useSignal<Box>({ width: 0, height: 0 })
   const along = useSignal(0)
-  const opened = useSignal<ReadonlySet<string>>(new Set())
   const pointed = useSignal<string | null>(null)
   const current = useSignal<string | null>(null)
   const ready = useSignal(false)
@@ -59,7 +61,10 @@ export const WaterlineChart = ({
   const size = useComputed(() => (isWall.value ? 1.42 : 1))
   const layout = useComputed(() => {
     const { storageUnits, items, site } = latest.value
-    const rules = rulesFor(Math.max(box.value.width, 240), size.value, opened.value)
+    // A lane under the keyboard is not folded away from under it.
+    const open = new Set(opened.value)
+    if (current.value !== null) open.add(current.value)
+    const rules = rulesFor(Math.max(box.value.width, 240), size.value, open)
     return layoutLanes(storageUnits, items, site.policy, rules)
   })
 
@@ -181,9 +186,12 @@ export const WaterlineChart = ({
 
   const open = (fold: Fold): void => {
     opened.value = new Set([...opened.value, ...fold.items.map((i) => i.id)])
-    stand(parts.find((p) => p === fold))
-    const first = fold.items[0]
-    if (first !== undefined) current.value = first.id
+    const first = fold.items[0]?.id
+    if (first === undefined) return
+    current.value = first
+    requestAnimationFrame(() =>
+      frame.current?.querySelector<HTMLElement>(`[data-lane="${CSS.escape(first)}"]`)?.focus(),
+    )
   }
 
   const headHeight = edges.head * (size.value > 1 ? 1.32 : 1)

@@ -77,6 +77,7 @@ export const Waterline = () => {
   const known = picture.value
   const near = useSignal<string | null>(null)
   const chosen = useSignal<string | null>(null)
+  const opened = useSignal<ReadonlySet<string>>(new Set())
   const phone = isPhone.value
   useEffect(() => {
     const onKey = (event: KeyboardEvent): void => {
@@ -104,6 +105,11 @@ export const Waterline = () => {
         <header>
           <h1>{say('view.waterline')}</h1>
           {!phone && <p class={`hint ${item === undefined ? 'dim' : ''}`}>{hint}</p>}
+          {opened.value.size > 0 && !asTable.value && !phone && (
+            <button type="button" class="plain" onClick={() => (opened.value = new Set())}>
+              {say('waterline.foldAgain')}
+            </button>
+          )}
           {!isWall.value && <Switch />}
         </header>
         {phone && !asTable.value && (
@@ -116,6 +122,7 @@ export const Waterline = () => {
             <WaterlineChart
               known={phone ? onlyUnit(known, unit) : known}
               near={(id) => (near.value = id)}
+              opened={opened}
             />
           )}
         </div>

@@ -164,6 +164,28 @@ test('the keyboard reaches lanes, walks them, opens one and comes back', async (
   await page.waitForURL('**/items/CR-2-shelf-B2')
 })
 
+test('a strip of calm items opens by keyboard, and folds again', async () => {
+  const { page } = await visit('/')
+  await page.waitForSelector('.stick canvas.drawn')
+  const lanes = page.locator('a.lane')
+  const before = await lanes.count()
+  await page.locator('button.lane').first().focus()
+  await page.keyboard.press('Enter')
+  await page.waitForFunction((was) => document.querySelectorAll('a.lane').length > was, before)
+  await page.waitForFunction(() => document.activeElement?.matches('a.lane'))
+  await page.click('button:has-text("Fold calm items")')
+  await page.waitForSelector('button:has-text("Fold calm items")', { state: 'detached' })
+})
+
+test('nothing overflows sideways at 400 % zoom, which leaves 320 px', async () => {
+  const { page } = await visit('/', { width: 320, height: 640 })
+  for (const path of ['/', '/waterline', '/items/CR-2-shelf-B5', '/probes', '/more']) {
+    await page.goto(new URL(path, page.url()).href)
+    await drawn(page, path)
+    expect(await page.evaluate('document.documentElement.scrollWidth')).toBeLessThanOrEqual(320)
+  }
+})
+
 test('T swaps chart and table, and the address keeps the choice', async () => {
   const { page } = await visit('/')
   await page.waitForSelector('.stick canvas.drawn')
