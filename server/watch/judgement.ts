@@ -114,8 +114,22 @@ export type Facts = {
   readonly hasBeenFrozen: boolean
 }
 
-export function factsOf(plan: Plan, v: View): Facts {
-  const standing = standingOf(plan, v, chancesOf(plan, v))
+/** A chance reckoned on the track so lately need not be reckoned again to see whether to look closer. */
+const recently_ms = 60_000
+
+/**
+ * The facts at little cost: where the track has just reckoned whether the item is poised, by that.
+ * What is announced is always taken from the full verdict.
+ */
+export function glanceOf(plan: Plan, v: View): Facts {
+  const { poised, poised_ms } = v.track
+  if (v.track.called !== null || poised_ms < 0 || v.now_ms - poised_ms > recently_ms)
+    return factsOf(plan, v, standingOf(plan, v, chancesOf(plan, v)))
+  const standing = standingOf(plan, v, null)
+  return factsOf(plan, v, standing === 'Below' && poised ? 'Poised' : standing)
+}
+
+const factsOf = (plan: Plan, v: View, standing: Standing): Facts => {
   return {
     standing,
     phase: phaseNow(plan, v, standing),

@@ -79,9 +79,9 @@ const poisedAfter = (
   unit: UnitTrack,
 ): { poised: boolean; poised_ms: number } => {
   if (track.called !== null || estimate.below < policy.belowConfidence)
-    return { poised: false, poised_ms: track.t_ms }
+    return { poised: false, poised_ms: -1 }
   const { poised, poised_ms } = track
-  if (track.t_ms - poised_ms < reckonEvery_ms) return { poised, poised_ms }
+  if (poised_ms >= 0 && track.t_ms - poised_ms < reckonEvery_ms) return { poised, poised_ms }
   const heading = headingOf(unit, track, matter, estimate)
   const chances = chancesOn(item, track, matter, heading, policy, measured)
   return { poised: isPoised(chances, policy, poised), poised_ms: track.t_ms }

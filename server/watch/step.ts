@@ -1,7 +1,7 @@
 import type { Reading } from '../../config/schema/reading.js'
 import type { Judgement } from '../../config/schema/verdict.js'
 import { evidenceOf } from './evidence.js'
-import { type Facts, factsOf, judgementAt, viewOf } from './judgement.js'
+import { type Facts, glanceOf, judgementAt, viewOf } from './judgement.js'
 import { placed } from './lateness.js'
 import { type Group, type Plan, valueAt } from './plan.js'
 import { type Announced, freshState, type GroupState } from './state.js'
@@ -42,11 +42,14 @@ const look = (
   ;(state.looked_ms as number[])[local] = t_ms
   const view = viewOf(plan, state, index, t_ms)
   if (view === null) return
-  const facts = factsOf(plan, view)
+  const glance = glanceOf(plan, view)
   const last = state.announced[local]!
-  if (!differs(facts, last)) return
+  if (!differs(glance, last)) return
   const judgement = judgementAt(plan, state, index, t_ms)
   if (judgement === null) return
+  const { standing, phase, evidence, hasBeenFrozen } = judgement
+  const facts = { standing, phase, evidence, hasBeenFrozen }
+  if (!differs(facts, last)) return
   ;(state.announced as Announced[])[local] = facts
   events.push({ kind: 'changed', judgement })
   const item = judgement.item
