@@ -20,7 +20,10 @@ const changesIn = (hours: number): Judgement[] => {
   const world = worldOf(scenario, site, library.solutes, scenario.seed)
   const { sent } = advance(world, freshSite(world, scenario.seed), hours * 3600, scenario.seed)
   const plan = planOf(site, library)
-  const states = new Map(plan.groups.map((g) => [g.id, freshState(plan, g)]))
+  const begin = { kind: 'clock' as const, now_ms: world.start_ms }
+  const states = new Map(
+    plan.groups.map((g) => [g.id, step(freshState(plan, g), begin, plan).state]),
+  )
   const changes: Judgement[] = []
   for (const s of [...sent].sort((a, b) => a.t_s - b.t_s)) {
     const reading = readingOf(lineOf(world, s))
