@@ -4,6 +4,7 @@ import { neverAdvise } from './neverAdvise.js'
 import { offences, verdictWords } from './offences.js'
 import {
   cautionTexts,
+  htmlTexts,
   jsonTexts,
   literalsIn,
   literalTexts,
@@ -32,7 +33,7 @@ test('there are the thirteen classes of the trade, each with both kinds of examp
 
 const catalogues = jsonTexts('config/words')
 const cautions = cautionTexts('config/library/cautions.json')
-const screens = literalTexts('client')
+const screens = [...literalTexts('client'), ...htmlTexts('client')]
 const scenarios = jsonTexts('config/scenarios')
 const demo = jsonTexts('config/demo')
 // Refusals, outages, help: a person reads these too.
@@ -61,6 +62,9 @@ test.each([
 test('the lint reads what it should: cautions and messages are not empty', () => {
   expect(cautions.length).toBeGreaterThan(100)
   expect(messages.length).toBeGreaterThan(100)
+  expect(catalogues.length).toBeGreaterThan(100)
+  expect(screens.filter(({ at }) => at.endsWith('.html')).length).toBeGreaterThan(0)
+  expect(pages.length).toBeGreaterThan(20)
 })
 
 test('a forbidden line put among the cautions is found, under "Do" and not under "Do not"', () => {

@@ -72,6 +72,14 @@ export const literalsIn = (source: string): string[] => {
   )
 }
 
+/** What a page says before any script runs. */
+export const htmlTexts = (folder: string): Text[] =>
+  filesUnder(folder, /\.html$/).flatMap((file) =>
+    [...readFileSync(file, 'utf8').matchAll(/>([^<>]*\w[^<>]*)<|content="([^"]*)"/g)].map(
+      ([, between, content]) => ({ at: file, text: (between ?? content ?? '').trim() }),
+    ),
+  )
+
 export const literalTexts = (folder: string): Text[] =>
   filesUnder(folder, /\.(ts|tsx)$/).flatMap((file) =>
     literalsIn(readFileSync(file, 'utf8')).map((text) => ({ at: file, text })),
