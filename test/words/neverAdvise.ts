@@ -297,6 +297,7 @@ export const neverAdvise: readonly Advice[] = [
     title: 'a likelihood shown as certainty',
     patterns: [
       /\b(will|shall|won't|cannot|can't|can never|is going to|are going to)\s+(not |never |certainly |surely |definitely )?(freeze|turn|nucleate)\b/i,
+      /\bno ice (can|will|could|shall) (form|appear|grow)\b/i,
       /\b(is|are) (certain|sure|guaranteed|bound|impossible) (to|that)\b/i,
       /\b(no|zero) (risk|chance) of\b/i,
       /\b(guaranteed?|risk-free)\b/i,
@@ -312,6 +313,7 @@ export const neverAdvise: readonly Advice[] = [
       'It is bound to turn.',
       'The chance is 0 %.',
       'At this depth it cannot freeze.',
+      'No ice can form now.',
     ],
     allowed: [
       'A knock may freeze it at once.',
