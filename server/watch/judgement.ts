@@ -90,7 +90,7 @@ const chancesOf = (plan: Plan, v: View): Chances | null => {
 const standingOf = (plan: Plan, v: View, chances: Chances | null): Standing => {
   const policy = valueAt(plan.policy, v.now_ms)
   if (v.track.called !== null) return 'Turned'
-  if (v.best === 'not assessable' || v.estimate.u_K > policy.usefulU_K) return 'Silent'
+  if (v.best === 'not assessable' || v.estimate.within_K > policy.usefulU_K) return 'Silent'
   const { below } = v.estimate
   if (below >= policy.belowConfidence) {
     const poised = chances !== null && isPoised(chances, policy, v.track.poised)
@@ -101,7 +101,7 @@ const standingOf = (plan: Plan, v: View, chances: Chances | null): Standing => {
 
 const phaseNow = (plan: Plan, v: View, standing: Standing): Phase => {
   const policy = valueAt(plan.policy, v.now_ms)
-  const known = v.best !== 'not assessable' && v.estimate.u_K <= policy.usefulU_K
+  const known = v.best !== 'not assessable' && v.estimate.within_K <= policy.usefulU_K
   if (!known || standing === 'Silent') return 'unknown'
   return phaseOf(v.track, v.estimate, v.matter.solidIce_kg_kg, policy.belowConfidence)
 }

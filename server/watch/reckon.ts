@@ -23,6 +23,8 @@ export type Budget = {
 export type Estimate = {
   readonly T_C: number
   readonly u_K: number
+  /** Standard uncertainty within the heaviest story: two clear stories are not one vague one. */
+  readonly within_K: number
   readonly below: number
   /** Weight of ice now, and of ice at any time. */
   readonly icy: number
@@ -128,6 +130,7 @@ export function reckoned(
   return {
     T_C,
     u_K: Math.sqrt(second),
+    within_K: Math.sqrt(heaviest.one.var_K2),
     below: Math.min(1, Math.max(0, below)),
     icy: Math.min(1, icy),
     turned: Math.min(1, turned),

@@ -53,7 +53,7 @@ export function jumpOf(unit: PlannedUnit, t_ms: number, measured: boolean, dt_s:
   const every_s = measured ? 40 * 3600 : 1800
   return {
     chance: Math.min(0.3, 1 - Math.exp(-Math.max(dt_s, 1) / every_s)),
-    size_K: measured ? 5 : 9,
+    size_K: measured ? 2.5 : 9,
     warmest_C: (given.ambient_C ?? 22) + overAmbient_K,
     coldest_C: coldest_C[given.kind],
   }

@@ -209,7 +209,7 @@ export const trace = (
     const touch =
       placement === 'on-item-wall'
         ? a * body.wall_C() + (1 - a) * air
-        : placement === 'in-buffer'
+        : placement === 'in-buffer' || placement === 'in-air'
           ? air
           : (body.mean_C() + body.centre_C()) / 2
     let target = touch
