@@ -7,7 +7,7 @@ import { type Board, fitted, type Scene, setFont } from './scene.js'
 const footText = ({ ctx }: Board, { size }: Scene, part: Lane | Fold): string => {
   if (part.kind === 'fold') return `×${part.items.length}`
   const place = shortPlace(part.item.position)
-  const room = Math.max(part.w + 2, 20 * size)
+  const room = Math.max(part.w - 2, 20 * size)
   if (ctx.measureText(place).width <= room) return place
   // `TK-2` in TK is 2, and `tray 5` is 5: the neighbours say what kind of place it is.
   const tail = place.startsWith(part.item.storageUnit)

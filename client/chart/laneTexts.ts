@@ -14,13 +14,18 @@ const soundingLevel = (board: Board, { size }: Scene, lane: Lane, margin: number
   const under = board.y(margin - 2 * u_K) + 17 * size
   const over = board.y(margin + 2 * u_K) - 7 * size
   const onLine = (y: number) => y < line + 16 * size && y > line - 4 * size
-  const wanted = lane.mark === 'near' || onLine(over) || over < board.top + 14 * size ? under : over
+  // Above the line stands the name.
+  const leaves = margin < 0 && over < line + 16 * size
+  const wanted =
+    lane.mark === 'near' || leaves || onLine(over) || over < board.top + 14 * size ? under : over
   const clear = onLine(wanted) ? line + 18 * size : wanted
   return Math.max(board.top + 15 * size, Math.min(board.bottom - 5 * size, clear))
 }
 
-/** The sounding: the margin in figures at every mark that asks for a hand. */
-const drawSounding = (board: Board, scene: Scene, lane: Lane): void => {
+type Taken = { right: number; y: number }
+
+/** The sounding: the margin in figures at every mark that asks for a hand; none lies on another. */
+const drawSounding = (board: Board, scene: Scene, lane: Lane, taken: Taken[]): void => {
   const margin = scene.margin(lane.item)
   if (!needsRoom(lane.mark) || margin === null) return
   const { ctx } = board
@@ -51,12 +56,18 @@ const drawSounding = (board: Board, scene: Scene, lane: Lane): void => {
     }
     return
   }
-  const y = soundingLevel(board, scene, lane, margin)
   const text = scene.stale
     ? duration(scene.now_ms - scene.asOf_ms)
     : lane.mark === 'near'
       ? signed(margin)
       : num(margin)
+  const half = ctx.measureText(text).width / 2 + 1
+  const level = soundingLevel(board, scene, lane, margin)
+  const isFree = (y: number) =>
+    taken.every((t) => t.right < x - half || Math.abs(t.y - y) >= 15 * size)
+  const shift = [0, 16, -16, 32].find((s) => isFree(level + s * size)) ?? 0
+  const y = level + shift * size
+  taken.push({ right: x + half, y })
   haloText(ctx, text, x, y, colours.ink, colours.air)
 }
 
@@ -69,7 +80,7 @@ const leastName = 84
  */
 const drawName = (board: Board, scene: Scene, lane: Lane): void => {
   const opened = needsRoom(lane.mark) || lane.mark === 'silent'
-  if (!opened || lane.w < 30 * scene.size) return
+  if (!opened || lane.w < 24 * scene.size) return
   const { ctx } = board
   const { colours, size } = scene
   const margin = scene.margin(lane.item)
@@ -94,12 +105,17 @@ const drawName = (board: Board, scene: Scene, lane: Lane): void => {
   ctx.restore()
 }
 
-export const drawTexts = (board: Board, scene: Scene, part: Lane | Fold): void => {
-  if (part.kind === 'lane') {
-    drawName(board, scene, part)
-    drawSounding(board, scene, part)
-    return
-  }
+/** Names and soundings, after all marks: lanes left to right. */
+export const drawTexts = (board: Board, scene: Scene, parts: readonly (Lane | Fold)[]): void => {
+  const taken: Taken[] = []
+  for (const part of parts) if (part.kind === 'lane') drawName(board, scene, part)
+  for (const part of parts)
+    if (part.kind === 'lane') drawSounding(board, scene, part, taken)
+    else drawFoldText(board, scene, part)
+}
+
+/** How many calm items a strip holds. */
+const drawFoldText = (board: Board, scene: Scene, part: Fold): void => {
   const { ctx } = board
   const { colours, size } = scene
   const text = scene.say('waterline.folded', { count: part.items.length })

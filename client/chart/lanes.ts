@@ -47,7 +47,11 @@ export type LaneRules = {
   readonly opened: ReadonlySet<string>
 }
 
-const weightOf = (mark: MarkKind): number => (needsRoom(mark) ? 2.7 : mark === 'silent' ? 1.35 : 1)
+/** Widths of a lane that needs room, in those of a calm one: the first that fits is taken. */
+const roomy = [2.7, 2.5, 2.3, 2.15, 2] as const
+
+const weightOf = (mark: MarkKind, roomyWeight: number): number =>
+  needsRoom(mark) ? roomyWeight : mark === 'silent' ? 1.35 : 1
 
 /** A strip of folded lanes stands as wide as this many calm ones. */
 const foldWeight = 2.2
@@ -100,8 +104,11 @@ const folded = (
   return parts
 }
 
-const weights = (parts: readonly Part[]): number =>
-  parts.reduce((sum, p) => sum + (p.kind === 'fold' ? foldWeight : weightOf(p.mark)), 0)
+const weights = (parts: readonly Part[], roomyWeight: number = roomy[0]): number =>
+  parts.reduce(
+    (sum, p) => sum + (p.kind === 'fold' ? foldWeight : weightOf(p.mark, roomyWeight)),
+    0,
+  )
 
 type OpenBay = { readonly unit: StorageUnitView; readonly parts: readonly Part[] }
 
@@ -150,16 +157,20 @@ const unitWidth = (
   bays: readonly { readonly parts: readonly Part[] }[],
   room: number,
   rules: LaneRules,
+  roomyWeight: number,
 ): number => {
   let one = 0
   let narrow = new Set<number>()
   // Each round can only make more bays narrow, so it ends after as many rounds as there are bays.
   for (let round = 0; round <= bays.length; round += 1) {
     const free = room - narrow.size * rules.leastBay
-    const total = bays.reduce((sum, b, i) => sum + (narrow.has(i) ? 0 : weights(b.parts)), 0)
+    const total = bays.reduce(
+      (sum, b, i) => sum + (narrow.has(i) ? 0 : weights(b.parts, roomyWeight)),
+      0,
+    )
     one = total === 0 ? rules.least : Math.max(rules.least, free / total)
     const next = new Set(
-      bays.flatMap((b, i) => (weights(b.parts) * one < rules.leastBay ? [i] : [])),
+      bays.flatMap((b, i) => (weights(b.parts, roomyWeight) * one < rules.leastBay ? [i] : [])),
     )
     if (next.size <= narrow.size) break
     narrow = next
@@ -201,16 +212,24 @@ export const layoutLanes = (
           policy,
         )
       : open
-  const one = rules.fixed ?? unitWidth(bays, room, rules)
+  // Where much is at risk, each gets a little less room before the chart grows wider than its window.
+  const fits = (roomyWeight: number): boolean =>
+    bays.reduce(
+      (sum, b) => sum + Math.max(rules.leastBay, weights(b.parts, roomyWeight) * rules.least),
+      0,
+    ) <= room
+  const roomyWeight = roomy.find(fits) ?? roomy[roomy.length - 1] ?? 2
+  const one = rules.fixed ?? unitWidth(bays, room, rules, roomyWeight)
   const widthOf = (part: Part, stretch: number): number =>
-    rules.fixed ?? one * stretch * (part.kind === 'fold' ? foldWeight : weightOf(part.mark))
+    rules.fixed ??
+    one * stretch * (part.kind === 'fold' ? foldWeight : weightOf(part.mark, roomyWeight))
 
   let x = 0
   const placed = bays.map((bay, i): Bay => {
     if (i > 0) x += rules.gap
     const from = x
     // A bay is never narrower than its head: its lanes share what is lacking.
-    const stretch = Math.max(1, rules.leastBay / (weights(bay.parts) * one))
+    const stretch = Math.max(1, rules.leastBay / (weights(bay.parts, roomyWeight) * one))
     const parts = bay.parts.map((part): Lane | Fold => {
       const here = { ...part, x, w: widthOf(part, stretch) }
       x += here.w

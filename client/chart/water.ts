@@ -110,6 +110,18 @@ const freeRun = (
   return null
 }
 
+/** The first lane in sight that is so. */
+const firstSeen = (
+  board: Board,
+  scene: Scene,
+  is: (lane: Lane) => boolean,
+): { x: number; lane: Lane } | null => {
+  const lane = scene.layout.bays
+    .flatMap((bay) => bay.parts)
+    .find((p): p is Lane => p.kind === 'lane' && board.x(p.x) >= board.left - 1 && is(p))
+  return lane === undefined ? null : { x: board.x(lane.x), lane }
+}
+
 /** What the line and the isobaths are called, once, over calm lanes near the left. */
 export const drawLineLabels = (board: Board, scene: Scene): void => {
   const { ctx } = board
@@ -122,7 +134,11 @@ export const drawLineLabels = (board: Board, scene: Scene): void => {
   const quiet = (lane: Lane) => lane.item.forecast.every(([, , middle]) => middle > 1.2)
   const at = (freeRun(board, scene, width, quiet) ?? freeRun(board, scene, width))?.x ?? null
   if (at !== null) haloText(ctx, name, at + 6, board.y(0) - 8 * size, colours.ink, colours.air)
-  const run = freeRun(board, scene, 34 * size, (l) => isTinted(l) && l.item.tints_K[1] !== null)
+  const isMarked = (l: Lane) => isTinted(l) && l.item.tints_K[1] !== null
+  // Where everything needs room: a lane whose mark is clear of its tints.
+  const isClear = (l: Lane) =>
+    isMarked(l) && (scene.margin(l.item) ?? 0) > (l.item.tints_K[0] ?? 0) + 1.2
+  const run = freeRun(board, scene, 34 * size, isMarked) ?? firstSeen(board, scene, isClear)
   if (run === null || scene.stale) return
   let above = Number.NEGATIVE_INFINITY
   for (const [i, text] of ['1 %', '10 %', '50 %'].entries()) {

@@ -57,7 +57,7 @@ const drawAll = (board: Board, scene: Scene): void => {
     if (part.kind === 'lane') drawLane(board, scene, part)
     else drawFold(board, scene, part)
   drawPinned(board, scene, parts)
-  for (const part of parts) drawTexts(board, scene, part)
+  drawTexts(board, scene, parts)
   drawFeet(board, scene)
   for (const bay of bays) drawHead(board, scene, bay)
   for (const bay of bays) drawFrame(board, scene, bay)
@@ -87,14 +87,9 @@ export const waterlineChart = (canvas: HTMLCanvasElement) => {
       maintainAspectRatio: false,
       animation: false,
       events: [],
-      scales: {
-        x: { type: 'linear', display: false, min: 0, max: 1 },
-        y: { type: 'linear', display: false, min: scale_K.bottom, max: scale_K.top },
-      },
     },
     plugins: [painter],
   })
-  const { x } = chart.options.scales ?? {}
   return {
     /** Draws what is to be seen now. */
     show(next: View, width: number, height: number): void {
@@ -108,9 +103,12 @@ export const waterlineChart = (canvas: HTMLCanvasElement) => {
           bottom: edges.foot * (size > 1 ? 1.32 : 1),
         },
       }
-      if (x !== undefined) {
-        x.min = next.along
-        x.max = next.along + width - scaleWidth(size) - edges.right
+      // Given anew each time: bounds changed within the old options would be read too late.
+      const bare = { type: 'linear', bounds: 'data', display: false } as const
+      const seen = width - scaleWidth(size) - edges.right
+      chart.options.scales = {
+        x: { ...bare, min: next.along, max: next.along + seen },
+        y: { ...bare, min: scale_K.bottom, max: scale_K.top },
       }
       if (chart.width !== width || chart.height !== height) chart.resize(width, height)
       chart.update('none')

@@ -21,6 +21,10 @@ export const Key = () => {
       {standings.map(([kind, words]) => (
         <Chip key={kind} kind={kind} text={say(words)} size={size} />
       ))}
+      <span class="own-line">
+        <i />
+        {say('waterline.line')}
+      </span>
       <span class="tints">
         <i class="d1" />
         <i class="d2" />

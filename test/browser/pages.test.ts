@@ -186,6 +186,56 @@ test('nothing overflows sideways at 400 % zoom, which leaves 320 px', async () =
   }
 })
 
+/** Whether the canvas bears a frame within 2 px of the right edge of the last lane in sight; half-covered pixels are light. */
+const frameStandsAtLastLane = (page: Page): Promise<boolean> =>
+  page.evaluate(() => {
+    const canvas = document.querySelector<HTMLCanvasElement>('.stick canvas')
+    const lane = [...document.querySelectorAll('.lane')].at(-1)
+    const pen = canvas?.getContext('2d')
+    if (canvas == null || lane === undefined || pen == null) return false
+    const box = canvas.getBoundingClientRect()
+    const dense = canvas.width / box.width
+    const x = (lane.getBoundingClientRect().right - box.left) * dense
+    const y = (box.height / 2) * dense
+    const { data } = pen.getImageData(Math.round(x - 2 * dense), y, Math.ceil(4 * dense), 1)
+    for (let i = 0; i < data.length; i += 4)
+      if ((data[i] ?? 255) < 190 && (data[i + 3] ?? 0) > 200) return true
+    return false
+  })
+
+/** Waits until the canvas has the width of its window, and what follows from that is drawn. */
+const fitsItsWindow = async (page: Page): Promise<void> => {
+  await page.waitForFunction(() => {
+    const canvas = document.querySelector('.stick canvas.drawn')
+    const width = document.querySelector('.waterline')?.clientWidth
+    return canvas !== null && Math.abs(canvas.getBoundingClientRect().width - (width ?? 0)) < 1
+  })
+  await page.evaluate(
+    () => new Promise((done) => requestAnimationFrame(() => requestAnimationFrame(done))),
+  )
+}
+
+const isStill = (page: Page): Promise<boolean> =>
+  page.evaluate(async () => {
+    const canvas = document.querySelector<HTMLCanvasElement>('.stick canvas')
+    const frame = () => new Promise((done) => requestAnimationFrame(done))
+    const before = canvas?.toDataURL()
+    for (let i = 0; i < 15; i += 1) await frame()
+    return before === canvas?.toDataURL()
+  })
+
+test('what is drawn stands under its links, also after the window changed', async () => {
+  const { page } = await visit('/', { still: false }, { practice: false })
+  for (const width of [1440, 900, 1920]) {
+    await page.setViewportSize({ width, height: 900 })
+    await page.waitForFunction((w) => innerWidth === w, width)
+    await fitsItsWindow(page)
+    // Moving takes 160 ms; it has ended when two frames look the same.
+    await expect.poll(() => isStill(page)).toBe(true)
+    expect(await frameStandsAtLastLane(page)).toBe(true)
+  }
+})
+
 test('T swaps chart and table, and the address keeps the choice', async () => {
   const { page } = await visit('/')
   await page.waitForSelector('.stick canvas.drawn')
