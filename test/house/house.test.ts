@@ -1,6 +1,11 @@
 import { execFileSync } from 'node:child_process'
 import { existsSync, readdirSync } from 'node:fs'
 import { expect, test } from 'vitest'
+import { readLibrary } from '../../config/library/read.js'
+import { everyValue } from '../../config/schema/inForce.js'
+import { refusalsOf } from '../../config/schema/parse.js'
+import { readSite, siteRefusals } from '../../config/schema/readSite.js'
+import { Scenario } from '../../config/schema/scenario.js'
 import { read, treeFiles, under } from './tree.js'
 
 const code = () =>
@@ -68,6 +73,32 @@ test('every JSON of the house can be read', () => {
   const files = under('config', /\.json$/)
   expect(files.length).toBeGreaterThan(0)
   for (const path of files) expect(() => JSON.parse(read(path)), path).not.toThrow()
+})
+
+test('every scenario has its shape, and every site of the house is one that Hoarline takes', () => {
+  const scenarios = under('config/scenarios', /\.json$/)
+  expect(scenarios.length).toBeGreaterThan(0)
+  for (const path of scenarios)
+    expect(refusalsOf(Scenario, JSON.parse(read(path))), path).toEqual([])
+  const sites = under('config/demo', /\.json$/)
+  expect(sites.length).toBeGreaterThan(0)
+  for (const path of sites) expect(siteRefusals(JSON.parse(read(path))), path).toEqual([])
+})
+
+test('what the demo stores calls for cautions by tags that some row knows', () => {
+  const known = new Set(
+    readLibrary().cautions.flatMap((row) =>
+      row.when.flatMap((when) => [...(when.anyTag ?? []), ...(when.noTag ?? [])]),
+    ),
+  )
+  for (const path of under('config/demo', /\.json$/)) {
+    const site = readSite(JSON.parse(read(path)))
+    const tags = site.products.flatMap(everyValue).flatMap((product) => product.cautions)
+    expect(
+      tags.filter((tag) => !known.has(tag)),
+      path,
+    ).toEqual([])
+  }
 })
 
 test('no source outgrows what a person reads in one go', () => {
