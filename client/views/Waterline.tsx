@@ -29,27 +29,42 @@ const Switch = () => (
 
 const worst: readonly MarkKind[] = ['turned', 'poised', 'below', 'near', 'silent']
 
-/** The most pressing mark of a storage unit, for its chip on a phone. */
-const worstOf = (known: Picture, unit: string): MarkKind | undefined => {
-  const kinds = known.items
-    .filter((i) => i.storageUnit === unit)
-    .map((i) => markOf(i, known.site.policy))
-  return worst.find((kind) => kinds.includes(kind))
+/** The most pressing mark of each storage unit, for its chip on a phone. */
+const worstByUnit = (known: Picture): ReadonlyMap<string, MarkKind> => {
+  const found = new Map<string, MarkKind>()
+  for (const item of known.items) {
+    const kind = markOf(item, known.site.policy)
+    const rank = worst.indexOf(kind)
+    const before = found.get(item.storageUnit)
+    if (rank >= 0 && (before === undefined || rank < worst.indexOf(before)))
+      found.set(item.storageUnit, kind)
+  }
+  return found
+}
+
+/** The storage unit with the most pressing mark; the first where nothing presses. */
+const firstToSee = (known: Picture, marks: ReadonlyMap<string, MarkKind>): string => {
+  const pressing = worst
+    .map((kind) => known.storageUnits.find((u) => marks.get(u.id) === kind)?.id)
+    .find((id) => id !== undefined)
+  return pressing ?? known.storageUnits[0]?.id ?? ''
 }
 
 /** On a phone one bay is shown; the chips name them all, each with its worst mark. */
 const Bays = ({
   known,
+  marks,
   chosen,
   choose,
 }: {
   known: Picture
+  marks: ReadonlyMap<string, MarkKind>
   chosen: string
   choose: (id: string) => void
 }) => (
   <nav class="bays" aria-label={say('waterline.bays')}>
     {known.storageUnits.map((unit) => {
-      const kind = worstOf(known, unit.id)
+      const kind = marks.get(unit.id)
       return (
         <button
           key={unit.id}
@@ -95,10 +110,9 @@ export const Waterline = () => {
     : item === undefined
       ? say('waterline.hint')
       : readout(item, at)
-  const firstInNeed = worst
-    .map((kind) => known.storageUnits.find((u) => worstOf(known, u.id) === kind)?.id)
-    .find((id) => id !== undefined)
-  const unit = chosen.value ?? firstInNeed ?? known.storageUnits[0]?.id ?? ''
+  // Only a phone shows one bay at a time; elsewhere nobody asks which.
+  const marks = phone ? worstByUnit(known) : new Map<string, MarkKind>()
+  const unit = phone ? (chosen.value ?? firstToSee(known, marks)) : ''
   return (
     <div class="waterline-view">
       <section class="left" aria-label={say('view.waterline')}>
@@ -113,7 +127,7 @@ export const Waterline = () => {
           {!isWall.value && <Switch />}
         </header>
         {phone && !asTable.value && (
-          <Bays known={known} chosen={unit} choose={(id) => (chosen.value = id)} />
+          <Bays known={known} marks={marks} chosen={unit} choose={(id) => (chosen.value = id)} />
         )}
         <div class="chart">
           {asTable.value ? (
