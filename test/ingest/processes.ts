@@ -12,6 +12,8 @@ const gone = (child: ChildProcess): Promise<number | null> =>
 export type Program = {
   /** Port of its embedded broker, or null. */
   readonly port: number | null
+  /** Its outside client is connected and subscribed. */
+  connected(): Promise<void>
   /** kill -9, and waits until it is gone. */
   kill(): Promise<void>
   /** SIGTERM; resolves with the exit code. */
@@ -29,11 +31,17 @@ export const startProgram = (given: {
       stdio: ['ignore', 'pipe', 'inherit'],
     })
     child.once('exit', (code) => reject(new Error(`the program ended with ${code}`)))
+    let say = () => {}
+    const isConnected = new Promise<void>((resolve) => {
+      say = resolve
+    })
     createInterface({ input: child.stdout }).on('line', (line) => {
-      const said = JSON.parse(line) as { ready?: boolean; port?: number | null }
+      const said = JSON.parse(line) as { ready?: boolean; port?: number | null; state?: string }
+      if (said.state === 'connected') say()
       if (said.ready !== true) return
       resolve({
         port: said.port ?? null,
+        connected: () => isConnected,
         async kill() {
           child.kill('SIGKILL')
           await gone(child)
