@@ -65,7 +65,15 @@ export const TryProbe = () => {
   const port = url.port === '' ? '1883' : url.port
   const message = JSON.stringify([{ n: probe.name, u: 'Cel', v: -4.2 }])
   return (
-    <details class="try">
+    <details
+      class="try"
+      onKeyDown={(event) => {
+        if (event.key !== 'Escape' || !event.currentTarget.open) return
+        event.stopPropagation()
+        event.currentTarget.open = false
+        event.currentTarget.querySelector('summary')?.focus()
+      }}
+    >
       <summary>{say('practice.try')}</summary>
       <div class="tryBox">
         <p>{say('practice.tryText', { item: probe.item })}</p>

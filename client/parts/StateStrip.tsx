@@ -1,4 +1,5 @@
 import { clock, duration, offset } from '../format.js'
+import { follow } from '../route.js'
 import { now_ms, type Picture, probesHeard, stale } from '../site.js'
 import { say } from '../words.js'
 
@@ -20,9 +21,14 @@ export const StateStrip = ({ known }: { known: Picture }) => {
         {say('state.heard')} <b>{say('state.ofAll', { heard, all })}</b>
       </span>
       {intake.refused > 0 && (
-        <span>
+        <a href="/probes" onClick={follow}>
           <b>{intake.refused}</b> {say('state.refused', { count: intake.refused })}
-        </span>
+        </a>
+      )}
+      {intake.conflicts > 0 && (
+        <a href="/probes" onClick={follow}>
+          <b>{intake.conflicts}</b> {say('state.conflicts', { count: intake.conflicts })}
+        </a>
       )}
       {intake.behind_s >= 10 && (
         <span>{say('state.behind', { lag: duration(intake.behind_s * 1000) })}</span>
