@@ -21,11 +21,14 @@ export const unknownsOf = (item: PlannedItem): number => own + perSlot * item.sl
  * line, where both stories nearly agree (watch.md §10).
  */
 const unknownCause_h = 0.01
+/** A wall alone shows least of it: there a turn must not be starved by its prior. */
+const wallAlone_h = 0.03
 const fromDepth_K = 0.4
 const fullDepth_K = 1
 
-const unknownCause = (depth_K: number): number =>
-  unknownCause_h * Math.min(1, Math.max(0, (depth_K - fromDepth_K) / (fullDepth_K - fromDepth_K)))
+const unknownCause = (depth_K: number, onWallAlone: boolean): number =>
+  (onWallAlone ? wallAlone_h : unknownCause_h) *
+  Math.min(1, Math.max(0, (depth_K - fromDepth_K) / (fullDepth_K - fromDepth_K)))
 
 /** Uncertainty of an ordinary probe: only what goes beyond it counts towards a possible depth, K. */
 const ordinary_u_K = 0.15
@@ -158,7 +161,12 @@ const withBirths = (
     const u_K = Math.hypot(matter.uFreezing_K, Math.sqrt(c.branch.g[at(n, H, H)]!) / c_kJ)
     const perhaps_K = depth_K + Math.max(0, u_K - ordinary_u_K)
     if (perhaps_K < leastDepth_K || drive.dt_s <= 0) return [c]
-    const cause_h = watched ? unknownCause(perhaps_K) : 0
+    const cause_h = watched
+      ? unknownCause(
+          perhaps_K,
+          !drive.outside.some((x) => !x) && drive.base1_C === 0 && drive.outside.length > 0,
+        )
+      : 0
     const kinetics = watched
       ? Math.min(byKinetics, (watchedMost(depth_K) * drive.dt_s) / 3600)
       : byKinetics
@@ -248,7 +256,13 @@ export function advance(
       felt_C: track.felt_C,
       baseMean_C: based ? (integral - track.mark_Ks) / dt_s : 0,
       base1_C,
-      ...drift(based ? unit.source : 'none', stale, dt_s, top.g[at(n, Δ, Δ)]!),
+      ...drift(
+        based ? unit.source : 'none',
+        stale,
+        dt_s,
+        top.g[at(n, Δ, Δ)]!,
+        item.slots.some((s) => s.kind === 'wall'),
+      ),
     }
     const watched = ownSpeaks(plan, item, track, next, 8)
     const depth0 = depthOf(track.bank, matter)

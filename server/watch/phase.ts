@@ -26,7 +26,8 @@ export function phaseOf(
   confidence: number,
 ): Phase {
   const last = track.phase
-  const iced = track.called !== null ? estimate.icy >= 0.5 : estimate.icy >= 0.95
+  // Until a turn is called the phase follows the standing, which says liquid.
+  const iced = track.called !== null && estimate.icy >= 0.5
   if (!iced) {
     if (estimate.below >= confidence) return 'supercooled'
     if (estimate.below <= 1 - confidence) return 'liquid'

@@ -10,6 +10,11 @@ export const spreadOfPosition_K = { air: 0.9, buffer: 1.2, neighbour: 2, none: 8
 const position_s = 12 * 3600
 /** Surroundings that nobody measures wander: K² per s, 1 K in an hour [common practice]. */
 const wander_K2_s = 1 / 3600
+/**
+ * A probe on a wall feels them at once, and what it feels must not be taken for the product: 5 K in
+ * an hour, which a door or a compressor easily makes.
+ */
+const felt_K2_s = 2 / 3600
 /** Unmeasured surroundings are not less certain than this, K. */
 const widest_K = 14
 
@@ -19,11 +24,12 @@ export function drift(
   stale: boolean,
   dt_s: number,
   variance_K2: number,
+  onWall: boolean,
 ): { keep: number; deltaQ_K2: number } {
   if (source === 'none' || stale)
     return {
       keep: 1,
-      deltaQ_K2: variance_K2 > widest_K * widest_K ? 0 : wander_K2_s * dt_s,
+      deltaQ_K2: variance_K2 > widest_K * widest_K ? 0 : (onWall ? felt_K2_s : wander_K2_s) * dt_s,
     }
   const σ = spreadOfPosition_K[source]
   const keep = Math.exp(-dt_s / position_s)
@@ -48,9 +54,15 @@ const overAmbient_K = 8
  * How often, and how far, what surrounds an item jumps: a door, a hand, a defrost that no air probe
  * sees. With an air probe the air itself is known and only the item's own corner may jump.
  */
-export function jumpOf(unit: PlannedUnit, t_ms: number, measured: boolean, dt_s: number): Jump {
+export function jumpOf(
+  unit: PlannedUnit,
+  t_ms: number,
+  measured: boolean,
+  onWall: boolean,
+  dt_s: number,
+): Jump {
   const given = valueAt(unit.given, t_ms)
-  const every_s = measured ? 40 * 3600 : 1800
+  const every_s = measured ? 40 * 3600 : onWall ? 14_400 : 1800
   return {
     chance: Math.min(0.3, 1 - Math.exp(-Math.max(dt_s, 1) / every_s)),
     size_K: measured ? 2.5 : 9,
