@@ -17,3 +17,8 @@ test(`${kills} kill -9 of the program while it hears another broker: all that th
   expect(found).toMatchObject(flawless)
   expect(found.acked).toBeGreaterThan(1000)
 }, 120_000)
+
+test('a program that acknowledges before it commits is found out by the same kills', async () => {
+  const found = await killEmbedded(temporaryFolder(), 4, 20260105, true)
+  expect(found.lost).toBeGreaterThan(0)
+}, 120_000)

@@ -110,14 +110,23 @@ const found = (data: string, acked: ReadonlySet<number>) => {
   }
 }
 
-/** Kills the intake with its embedded broker again and again while a gateway publishes. */
-export const killEmbedded = async (data: string, kills: number, seed: number): Promise<Found> => {
+/**
+ * Kills the intake with its embedded broker again and again while a gateway publishes.
+ *
+ * @param ackFirst  the mistake that this is there to find
+ */
+export const killEmbedded = async (
+  data: string,
+  kills: number,
+  seed: number,
+  ackFirst = false,
+): Promise<Found> => {
   const random = seeded(seed)
   const { acked, run, stop } = gateway()
   let slowestStart_ms = 0
   const start = async (): Promise<Program> => {
     const from = performance.now()
-    const program = await startProgram({ data, probes })
+    const program = await startProgram({ data, probes, ackFirst })
     slowestStart_ms = Math.max(slowestStart_ms, performance.now() - from)
     return program
   }

@@ -25,6 +25,7 @@ export const startProgram = (given: {
   data: string
   probes: readonly object[]
   outsidePort?: number
+  ackFirst?: boolean
 }): Promise<Program> =>
   new Promise((resolve, reject) => {
     const child = spawn(process.execPath, [file('program.mjs'), JSON.stringify(given)], {

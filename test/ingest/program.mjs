@@ -1,5 +1,6 @@
 // The intake alone, in a process of its own that tests may kill: embedded broker or outside
-// client, decode, log. Its one argument is JSON: { data, probes, outsidePort? }.
+// client, decode, log. Its one argument is JSON: { data, probes, outsidePort?, ackFirst? }.
+// `ackFirst` is the mistake that the kill tests are there to find: it answers before the commit.
 import { decode } from '../../dist/server/decode/decode.js'
 import { mappingsOf } from '../../dist/server/decode/mappings.js'
 import { openLog } from '../../dist/server/log/sqliteLog.js'
@@ -7,16 +8,17 @@ import { openBroker } from '../../dist/server/mqtt/broker.js'
 import { listenTo } from '../../dist/server/mqtt/outside.js'
 import { siteOf } from './site.mjs'
 
-const { data, probes, outsidePort } = JSON.parse(process.argv[2])
+const { data, probes, outsidePort, ackFirst } = JSON.parse(process.argv[2])
 const mappings = mappingsOf(siteOf(probes))
 const log = await openLog({ data, onOutage: () => {} })
 
 const receive = async (message) => {
   const { readings, refused } = decode({ ...message, receivedAt_ms: Date.now() }, mappings)
-  await log.append(
+  const kept = log.append(
     readings.map((reading) => ({ part: 0, reading })),
     refused,
   )
+  if (ackFirst !== true) await kept
 }
 
 const way =
