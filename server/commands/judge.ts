@@ -275,6 +275,9 @@ const complain = (refusals: readonly Refusal[]): number => {
 }
 
 /** @returns the exit code: 0 all answered, 2 bad usage or file, 3 some lines refused */
+/** A reader that has seen enough (`| head`) closed the pipe; that is its right. */
+class NobodyReads extends Error {}
+
 export async function main(given: readonly string[]): Promise<number> {
   try {
     const args = argumentsOf(given)
@@ -305,8 +308,10 @@ export async function main(given: readonly string[]): Promise<number> {
       if (out === '') return
       const text = out
       out = ''
-      if (!process.stdout.write(text))
-        await new Promise((done) => process.stdout.once('drain', done))
+      const taken = await new Promise<boolean>((done) =>
+        process.stdout.write(text, (error) => done(!error)),
+      )
+      if (!taken) throw new NobodyReads()
     }
     const lines = async function* () {
       let k = 0
@@ -329,9 +334,13 @@ export async function main(given: readonly string[]): Promise<number> {
     return refused > 0 ? 3 : 0
   } catch (error) {
     if (error instanceof Refusal) return complain([error])
+    if (error instanceof NobodyReads) return 0
     throw error
   }
 }
 
-if (process.argv[1] === fileURLToPath(import.meta.url))
+if (process.argv[1] === fileURLToPath(import.meta.url)) {
+  // The failed write itself is answered where it was made.
+  process.stdout.on('error', () => undefined)
   process.exitCode = await main(process.argv.slice(2))
+}

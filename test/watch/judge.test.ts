@@ -21,8 +21,9 @@ const file = (name: string, text: string): string => {
 const ran = async (site: string, lines: readonly string[]) => {
   let out = ''
   let complaints = ''
-  const stdout = vi.spyOn(process.stdout, 'write').mockImplementation((text) => {
+  const stdout = vi.spyOn(process.stdout, 'write').mockImplementation((text, done) => {
     out += String(text)
+    if (typeof done === 'function') done()
     return true
   })
   const stderr = vi.spyOn(process.stderr, 'write').mockImplementation((text) => {
