@@ -47,6 +47,7 @@ const drawSounding = (board: Board, scene: Scene, lane: Lane, taken: Taken[]): v
       board.bottom - 20 * size,
     )
     if (depth !== null) {
+      taken.push({ right: x + ctx.measureText(num(depth)).width / 2 + 1, y })
       haloText(ctx, num(depth), x, y, colours.ink, colours.air)
       y += 15 * size
     }

@@ -98,16 +98,14 @@ export const labels = (chart: Chart, view: TimeView): void => {
   }
   if (view.readings.probes.length === 0)
     write(say('chart.noProbe'), area.left + 8, area.top + 30, 400, colours.ink)
-  const own = view.narrow
-    ? say('chart.ownShort', { T: celsius(freezingPoint_C, 2) })
-    : say('chart.own', {
-        T: celsius(freezingPoint_C, 2),
-        range: interval(
-          freezingPoint_C - 2 * freezingPoint_u_K,
-          freezingPoint_C + 2 * freezingPoint_u_K,
-          2,
-        ),
-      })
+  const range = interval(
+    freezingPoint_C - 2 * freezingPoint_u_K,
+    freezingPoint_C + 2 * freezingPoint_u_K,
+    2,
+  )
+  // Water's own line is known better than two decimals say.
+  const key = view.narrow ? 'chart.ownShort' : range.includes('…') ? 'chart.own' : 'chart.ownExact'
+  const own = say(key, { T: celsius(freezingPoint_C, 2), range })
   write(own, area.left + 8, y.getPixelForValue(freezingPoint_C) - 7, 650, colours.ink)
   const [low, high] = item.label_C ?? []
   for (const [limit, key] of [

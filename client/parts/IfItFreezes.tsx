@@ -83,8 +83,10 @@ const Figures = ({ item }: { item: ItemView }) => {
   const f = verdict.ifItFreezes
   if (f !== null && f.jump_K < 0.005) return <p class="pad">{say('freezes.notBelow')}</p>
   if (f === null) return <p class="pad">{say('freezes.unknown')}</p>
-  const rises = (r: readonly [number, number, number] | null) =>
-    r === null ? say('frame.unknown') : `${interval(r[0], r[2], r[2] < 1 ? 2 : 1)} K`
+  const rises = (r: readonly [number, number, number] | null) => {
+    if (r === null) return say('frame.unknown')
+    return r[2] < 0.01 ? say('freezes.hardly') : `${interval(r[0], r[2], r[2] < 1 ? 2 : 1)} K`
+  }
   return (
     <dl class="out">
       <Row
