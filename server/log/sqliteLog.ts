@@ -1,5 +1,4 @@
 import { Worker } from 'node:worker_threads'
-import { Refusal } from '../../config/schema/refusal.js'
 import {
   type Arrival,
   type IngestLog,
@@ -11,6 +10,7 @@ import {
 import type { Counts } from '../store/counters.js'
 import { holdFolder } from '../store/database.js'
 import { openReader, type Reader } from '../store/reader.js'
+import { started } from './started.js'
 import { threadFile } from './threadFile.js'
 import {
   type Answer,
@@ -105,6 +105,7 @@ export const openLog = async (options: {
   let waitingSize = 0
   let nextId = 1
   let nextJob = 1
+  let attempt = 0
   let timer: NodeJS.Timeout | null = null
   let retry: NodeJS.Timeout | null = null
   let away: Outage | null = null
@@ -126,7 +127,7 @@ export const openLog = async (options: {
     jobs.forEach((j, i) => {
       if (j.extra.refused.length > 0 || j.extra.change !== null) extras.set(i, j.extra)
     })
-    const batch: Batch = { id, columns, sizes: jobs.map((j) => j.arrivals.length), extras }
+    const batch: Batch = { id, attempt, columns, sizes: jobs.map((j) => j.arrivals.length), extras }
     worker.postMessage({ kind: 'batch', batch } satisfies Order, [columns.numbers.buffer])
   }
 
@@ -175,6 +176,7 @@ export const openLog = async (options: {
     flying.delete(id)
     const outage = new Outage('disk', `the disk takes no more: ${message}`)
     say(outage)
+    attempt += 1
     // Back in order, whichever batch comes back first: what came first is tried first.
     waiting.push(...jobs)
     waiting.sort((a, b) => a.n - b.n)
@@ -223,7 +225,8 @@ export const openLog = async (options: {
       })
     })
 
-  const die = (error: Error) => {
+  const die = (error: Outage) => {
+    if (closed === null) say(error)
     closed ??= error
     for (const job of [...flying.values()].flat().concat(waiting.splice(0))) job.fail(error)
     flying.clear()
@@ -258,18 +261,20 @@ export const openLog = async (options: {
     counts: () => counts,
     outage: () => away,
     async close() {
-      if (closed !== null || closing) return
+      if (closing) return
       closing = true
-      await new Promise<void>((resolve) => {
-        whenIdle = resolve
-        flush()
-      })
-      closed = new Error('the log is closed')
+      if (closed === null) {
+        await new Promise<void>((resolve) => {
+          whenIdle = resolve
+          flush()
+        })
+        closed = new Error('the log is closed')
+        const ended = new Promise((resolve) => worker.once('exit', resolve))
+        worker.postMessage({ kind: 'close' } satisfies Order)
+        await ended
+      }
       if (retry !== null) clearTimeout(retry)
-      const ended = new Promise((resolve) => worker.once('exit', resolve))
-      worker.postMessage({ kind: 'close' } satisfies Order)
       reader.close()
-      await ended
       letGo()
     },
   }
@@ -291,16 +296,3 @@ const question = (): Job => ({
   settle: () => {},
   fail: () => {},
 })
-
-/** The counts that the writer opens with. */
-const started = (worker: Worker): Promise<Counts> =>
-  new Promise((resolve, reject) => {
-    worker.once('error', reject)
-    worker.once('message', (answer: Answer) => {
-      worker.off('error', reject)
-      if (answer.kind === 'ready') return resolve(answer.counts)
-      if (answer.kind === 'failed' && answer.refusal !== null)
-        return reject(new Refusal(...answer.refusal))
-      reject(new Error(answer.kind === 'failed' ? answer.message : `unexpected: ${answer.kind}`))
-    })
-  })

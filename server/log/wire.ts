@@ -103,6 +103,11 @@ export type Batch = {
   readonly id: number
   readonly columns: Columns
   readonly sizes: readonly number[]
+  /**
+   * Rises with every batch that came back. One that was sent before an earlier one came back is not
+   * tried, so that the order of the log is that of the calls, whatever fails.
+   */
+  readonly attempt: number
   /** By call; most calls bring readings alone. */
   readonly extras: ReadonlyMap<number, Extra>
 }

@@ -156,6 +156,7 @@ const open = () => {
 const start = () => {
   const { db, keepBatch, counts } = open()
   let dirty = false
+  let last: { attempt: number; message: string } | null = null
   const tidy = setInterval(() => {
     const busy = dirty
     dirty = false
@@ -177,11 +178,14 @@ const start = () => {
       return
     }
     dirty = true
-    const { id } = order.batch
+    const { id, attempt } = order.batch
+    if (last !== null && attempt <= last.attempt)
+      return answer({ kind: 'outage', id, message: last.message })
     try {
       answer({ kind: 'done', id, outcomes: keepBatch(order.batch), counts: counts() })
     } catch (error) {
-      answer({ kind: 'outage', id, message: error instanceof Error ? error.message : `${error}` })
+      last = { attempt, message: error instanceof Error ? error.message : `${error}` }
+      answer({ kind: 'outage', id, message: last.message })
     }
   })
   answer({ kind: 'ready', counts: counts() })

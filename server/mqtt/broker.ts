@@ -70,6 +70,9 @@ export const openBroker = async (options: {
     preConnect(client, packet, done) {
       // Another broker's bridge, which says so in its CONNECT.
       if ('bridgeMode' in packet && packet.bridgeMode === true) bridges.add(client)
+      // No session outlives its connection: what a subscriber misses would queue without a bound.
+      // A publisher loses nothing by it: it sends again what was not acknowledged.
+      packet.clean = true
       done(null, true)
     },
     authorizeSubscribe(_client, subscription, done) {
@@ -114,6 +117,7 @@ export const openBroker = async (options: {
   })
   server.maxConnections = mostConnections
   const port = await listen(server, options.host, options.port)
+  server.on('error', (error) => options.onFault?.(error)) // a connection that could not be taken
 
   return {
     port,

@@ -3,6 +3,7 @@ import type { Duplex } from 'node:stream'
 import mqtt, { type IConnackPacket, type IPublishPacket, type Packet } from 'mqtt-packet'
 import { type Acks, acksOf } from './acks.js'
 import { backOff_ms } from './backOff.js'
+import { isVersionRefusal, refusedConnect } from './connack.js'
 import type { Receive } from './message.js'
 
 /** Un-acknowledged publishes that are held; past it the socket is not read until half are done. */
@@ -61,28 +62,6 @@ export type OutsideOptions = {
   readonly random?: () => number
   readonly firstRetry_ms?: number
 }
-
-const refusedConnect = (packet: IConnackPacket): { code: number; text: string } => {
-  const code = packet.reasonCode ?? packet.returnCode ?? 0
-  const texts: Record<number, string> = {
-    1: 'it does not speak this version of MQTT',
-    2: 'it refuses our client id',
-    3: 'it says that it is not available',
-    4: 'it refuses user or password: check the _USER and _PASSWORD_FILE variables',
-    5: 'it does not let this user in: check its access list',
-    132: 'it does not speak this version of MQTT',
-    133: 'it refuses our client id',
-    134: 'it refuses user or password: check the _USER and _PASSWORD_FILE variables',
-    135: 'it does not let this user in: check its access list',
-    136: 'it says that it is not available',
-    137: 'it says that it is busy',
-    151: 'it says that a quota is used up',
-    159: 'it limits how often we may connect',
-  }
-  return { code, text: texts[code] ?? `it refuses our connection (code ${code})` }
-}
-
-const isVersionRefusal = (code: number) => code === 1 || code === 0x84
 
 /**
  * Listens to somebody else's broker, with the guarantee of our own: PUBACK after commit.

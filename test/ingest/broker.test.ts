@@ -140,6 +140,28 @@ const bridgeTo = async (port: number) => {
   }
 }
 
+test('nothing is queued for a subscriber that is away', async () => {
+  const { broker } = await testIntake(probes)
+  const asks = { clientId: 'screen', clean: false, reconnectPeriod: 0 }
+  const before = await device(broker.port, asks)
+  await before.subscribeAsync('n', { qos: 1 })
+  await before.endAsync()
+  const publisher = await device(broker.port)
+  await publisher.publishAsync('n', '1', { qos: 1 })
+  const after = await device(broker.port, asks)
+  const came: string[] = []
+  const second = new Promise<void>((resolve) => {
+    after.on('message', (_topic, payload) => {
+      came.push(payload.toString())
+      if (payload.toString() === '2') resolve()
+    })
+  })
+  await after.subscribeAsync('n', { qos: 1 })
+  await publisher.publishAsync('n', '2', { qos: 1 })
+  await second
+  expect(came).toEqual(['2'])
+})
+
 test("a device's retain flag makes its message no less fresh; a bridge's marks an old copy", async () => {
   const { log, broker } = await testIntake(probes)
   const plain = await device(broker.port)
