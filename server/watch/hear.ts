@@ -1,5 +1,5 @@
 import { advance, unknownsOf } from './advance.js'
-import { biasOf, sensorOf, shareOf, Δ } from './estimate.js'
+import { biasOf, sensorOf, touchOnIce, Δ } from './estimate.js'
 import { at, type Gauss } from './gauss.js'
 import { forkOdds, gentleAfter, opensFork, returned, wronglyAside } from './lookalikes.js'
 import { type Matter, temperature_C } from './matter.js'
@@ -16,7 +16,7 @@ import {
   thinned,
   weigh,
 } from './rivals.js'
-import { slotPrior } from './slots.js'
+import { type SlotPrior, slotPrior } from './slots.js'
 import { bankOf } from './start.js'
 import type { Branch, Core, Fork, ItemTrack, SlotTrack } from './state.js'
 import { jumpOf } from './surroundings.js'
@@ -126,6 +126,9 @@ const certain = 0.9999
 const needed = 2
 /** A reading so near to where a settled probe would stand on the plateau speaks for itself. */
 const onPlateau_z = 2.5
+/** Farther than this from where its own freezing point would show, by what is vouched for. */
+const nearPlateau_z = 3
+const slack_K = 0.1
 /** A rise must have come to its end: so long, in lags of the probe, must it look like ice. */
 const wait_T90 = 1.5
 const waitRange_s: readonly [number, number] = [10, 300]
@@ -149,6 +152,8 @@ const calledBy = (
   if (track.called !== null || !isStrong) return { strong, strong_ms }
   const [least, most] = waitRange_s
   const wait_ms = 1000 * Math.min(most, Math.max(least, wait_T90 * T90_s))
+  // A rise that does not end on the item's own freezing point is no call, whatever it is.
+  if (settled_z > nearPlateau_z) return { strong, strong_ms }
   const atOnce = p >= certain && settled_z < onPlateau_z
   if (atOnce || (strong >= needed && t_ms - strong_ms >= wait_ms)) {
     const iced = track.bank.filter((b) => b.kind !== 'liquid')
@@ -160,16 +165,24 @@ const calledBy = (
 }
 
 /** How far a reading is from where a settled probe would stand on the heaviest story with ice. */
-const fromPlateau_z = (track: ItemTrack, matter: Matter, sight: Sight, n: number): number => {
+const fromPlateau_z = (
+  track: ItemTrack,
+  matter: Matter,
+  sight: Sight,
+  prior: SlotPrior,
+  outside: boolean,
+): number => {
   const iced = track.bank.filter((b) => b.kind === 'ice')
   if (iced.length === 0) return Number.POSITIVE_INFINITY
   const top = iced.reduce((a, b) => (b.w > a.w ? b : a))
-  const a = top.g[shareOf(sight.slot)]!
   const T = temperature_C(matter, true, top.g[0]!)
-  const env_C = track.base_C + top.g[Δ]!
-  const expected = T + (1 - a) * (env_C - T) + top.g[biasOf(sight.slot)]!
-  const b = at(n, biasOf(sight.slot), biasOf(sight.slot))
-  return Math.abs(sight.y_C - expected) / Math.sqrt(sight.R_K2 + top.g[b]! + 0.05 ** 2)
+  const soft = touchOnIce(matter, true, outside, top.g[0]!)
+  const rest = outside ? 1 - prior.share * soft : (1 - prior.share) * soft
+  const away_K = (outside ? track.base_C + top.g[Δ]! : track.felt_C) - T
+  const spread2 = prior.shareVar * soft * soft * away_K * away_K
+  // Not the scaled noise: a model that fits badly must not bring the plateau nearer.
+  const u2 = prior.biasVar_K2 + matter.uFreezing_K ** 2 + spread2 + slack_K ** 2
+  return Math.abs(sight.y_C - T - rest * away_K) / Math.sqrt(u2)
 }
 
 /** Once a turn is called the liquid story keeps no more than this: the verdict stands by its word. */
@@ -371,7 +384,13 @@ export function hearOwn(
       track = withSlot({ ...track, bank, fork: null }, k, trusting)
       return {
         ...track,
-        ...calledBy(track, t_ms, true, probe.given.T90_s, Number.POSITIVE_INFINITY),
+        ...calledBy(
+          track,
+          t_ms,
+          true,
+          probe.given.T90_s,
+          fromPlateau_z(track, matter, sight, prior, kind === 'wall'),
+        ),
       }
     }
     fork = odds < notApart ? null : { ...fork, odds, level_C: y_C }
@@ -425,7 +444,7 @@ export function hearOwn(
       t_ms,
       !doubtful && kind !== 'sibling',
       probe.given.T90_s,
-      fromPlateau_z(track, matter, sight, n),
+      fromPlateau_z(track, matter, sight, prior, kind === 'wall'),
     ),
   }
   // The doubt has been weighed in the call; it must not come back on another occasion.

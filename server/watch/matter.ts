@@ -207,7 +207,8 @@ const make = (
     fill_kg,
     wall_kJ_kgK,
     coupling_kW_kgK: UA_W_K / 1000 / fill_kg,
-    couplingRelU: Math.max(leastRelU, relU),
+    // Stated as a bound (±30 % of a table value), read as a rectangle: its standard uncertainty is a/√3.
+    couplingRelU: Math.max(leastRelU, relU / Math.sqrt(3)),
     UA_W_K,
     settle_s: settlingOf(container),
     gradient: gradientOf(container, UA_W_K, areaOf_m2(container)),

@@ -1,4 +1,5 @@
 import type { Fan } from '../../config/schema/api.js'
+import { chancesOn, isPoised } from './chance.js'
 import { ahead_C, sides } from './forecast.js'
 import { chancesOver, exposed } from './hazard.js'
 import { viewOf } from './judgement.js'
@@ -67,6 +68,46 @@ export function outlookOf(
     chance.push([t_ms, l, m, h])
   }
   return { margin, forecast, chance }
+}
+
+/** How far ahead an item is looked at for the time it becomes Poised, h; later is as good as never. */
+const lookAhead_h = 24
+/** Halvings of that range: six minutes are near enough for a lead time. */
+const leadHalvings = 8
+
+/**
+ * Hours until a supercooled item becomes Poised on its heading: early, middle and late, by how cold
+ * it and its surroundings are within their uncertainty.
+ *
+ * @returns null where it is not on its way there within a day, or where nobody can know; the late
+ *          end is then at most that day
+ */
+export function poisedIn_h(
+  state: GroupState,
+  index: number,
+  plan: Plan,
+  now_ms: number,
+): readonly [number, number, number] | null {
+  const v = viewOf(plan, state, index, now_ms)
+  if (v === null || v.best === 'not assessable' || v.track.called !== null) return null
+  const policy = valueAt(plan.policy, now_ms)
+  const measured = v.best.startsWith('measured')
+  const poisedAt = (h: number, z: number): boolean => {
+    const then = { ...v.heading, T_C: ahead_C(v.heading, h * 3600, z) }
+    return isPoised(chancesOn(v.item, v.track, v.matter, then, policy, measured), policy, false)
+  }
+  const first = (z: number): number => {
+    if (!poisedAt(lookAhead_h, z)) return lookAhead_h
+    let [low, high] = [0, lookAhead_h]
+    for (let k = 0; k < leadHalvings; k++) {
+      const middle = (low + high) / 2
+      if (poisedAt(middle, z)) high = middle
+      else low = middle
+    }
+    return high
+  }
+  const [warm, middle, cold] = sides.map(first) as [number, number, number]
+  return middle < lookAhead_h ? [cold, middle, warm] : null
 }
 
 /** Chances within an hour at which the Waterline changes its tint. */

@@ -124,6 +124,10 @@ export function reckoned(
     }
   }
   for (const { w, one } of ones) second += w * (one.var_K2 + (one.T_C - T_C) ** 2)
+  // Ice that nobody could see still stands beside the liquid estimate: the band must hold it.
+  if (liquidOnly)
+    for (const { b, w } of all)
+      if (!unseen({ b, w })) second += w * (ofBranch(plan, item, track, b, matter).T_C - T_C) ** 2
   const heaviest = ones.reduce((a, b) => (b.w > a.w ? b : a))
   const liquid = ones.filter((x) => x.b.kind !== 'ice').sort((a, b) => b.w - a.w)[0]
   const n = unknownsOf(item)
