@@ -24,6 +24,8 @@ export type Judged = {
   readonly track: readonly (readonly [number, number])[]
   readonly forecast: readonly Fan[]
   readonly tints_K: ItemView['tints_K']
+  /** Hours until it becomes Poised; null where it is not Below or not on its way there. */
+  readonly poisedIn_h: readonly [number, number, number] | null
 }
 
 /** A probe not heard for longer than this counts as never heard, on the Probes page. */
@@ -161,6 +163,7 @@ export const boardOf = (
       track: known.track,
       forecast: known.forecast,
       tints_K: known.tints_K,
+      poisedIn_h: known.poisedIn_h === null ? null : [...known.poisedIn_h],
     }
   }
 

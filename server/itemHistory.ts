@@ -58,7 +58,7 @@ export const historyOf = (plan: Plan, reader: Reader, now_ms: number) => {
       const last_ms = track.at(-1)?.[0] ?? Number.NEGATIVE_INFINITY
       if (j.temperature_C === null || j.u_K === null || j.margin_K === null) return null
       if (j.t_ms - last_ms < every_ms) return null
-      track.push([j.t_ms, j.margin_K])
+      track.push([j.t_ms, Math.round(j.margin_K * 1000) / 1000])
       while (track[0] !== undefined && track[0][0] < j.t_ms - track_ms) track.shift()
       return {
         item: j.item,

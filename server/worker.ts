@@ -1,6 +1,7 @@
 import { createHash } from 'node:crypto'
 import { parentPort, workerData } from 'node:worker_threads'
 import { readLibrary } from '../config/library/read.js'
+import type { Fan } from '../config/schema/api.js'
 import { type Judgement, modelVersion } from '../config/schema/verdict.js'
 import type { Judged } from './board.js'
 import { historyOf } from './itemHistory.js'
@@ -10,7 +11,7 @@ import { openReader } from './store/reader.js'
 import type { Snapshot } from './store/states.js'
 import { curvesOf } from './watch/curves.js'
 import { judgementOf } from './watch/judgement.js'
-import { outlookOf, tintsOf } from './watch/outlook.js'
+import { outlookOf, poisedIn_h, tintsOf } from './watch/outlook.js'
 import { type Group, planOf } from './watch/plan.js'
 import { freshState, type GroupState } from './watch/state.js'
 import { type Input, replayed, step } from './watch/step.js'
@@ -183,6 +184,20 @@ const save = (estimates: readonly Estimate[], wall_ms: number): void => {
   trail = []
 }
 
+/** A figure on a screen needs no more than a thousandth of a kelvin. */
+const milli = (x: number): number => Math.round(x * 1000) / 1000
+
+/** A lead time is reckoned anew once a minute of data time: it costs more than all else shown. */
+const leadEvery_ms = 60_000
+const leads = new Map<number, { at_ms: number; lead_h: ReturnType<typeof poisedIn_h> }>()
+const leadOf = (state: GroupState, index: number, now_ms: number) => {
+  const known = leads.get(index)
+  if (known !== undefined && now_ms - known.at_ms < leadEvery_ms) return known.lead_h
+  const lead_h = poisedIn_h(state, index, plan, now_ms)
+  leads.set(index, { at_ms: now_ms, lead_h })
+  return lead_h
+}
+
 /** Is a forecast drawn: at risk, or on its way to its line within the hour? */
 const nearsItsLine = ({ standing, crossing }: Judgement): boolean =>
   standing === 'Near' ||
@@ -199,15 +214,19 @@ const judgedAt = (index: number, now_ms: number): Judged | null => {
   const judgement = judgementOf(state, index, plan, now_ms)
   if (judgement === null) return null
   const { since_ms, announcedTurned_ms, track } = history.at(index)
+  const margin = nearsItsLine(judgement)
+    ? outlookOf(state, index, plan, now_ms, forecast_h).margin
+    : []
   return {
     judgement,
     since_ms,
     announcedTurned_ms,
     track,
-    forecast: nearsItsLine(judgement)
-      ? outlookOf(state, index, plan, now_ms, forecast_h).margin
-      : [],
+    forecast: margin.map(
+      ([t_ms, ...fan]): Fan => [t_ms, milli(fan[0]), milli(fan[1]), milli(fan[2])],
+    ),
     tints_K: tintsOf(plan, index, now_ms),
+    poisedIn_h: judgement.standing === 'Below' ? leadOf(state, index, now_ms) : null,
   }
 }
 

@@ -21,11 +21,14 @@ const file = (name: string, text: string): string => {
 const ran = async (site: string, lines: readonly string[]) => {
   let out = ''
   let complaints = ''
-  const stdout = vi.spyOn(process.stdout, 'write').mockImplementation((text, done) => {
-    out += String(text)
-    if (typeof done === 'function') done()
-    return true
-  })
+  const stdout = vi
+    .spyOn(process.stdout, 'write')
+    .mockImplementation((text, ...rest: unknown[]) => {
+      out += String(text)
+      const written = rest.at(-1)
+      if (typeof written === 'function') written()
+      return true
+    })
   const stderr = vi.spyOn(process.stderr, 'write').mockImplementation((text) => {
     complaints += String(text)
     return true
