@@ -150,7 +150,10 @@ export function carry(g: Gauss, n: number, matter: Matter, onIce: boolean, drive
   F[Λ * n + Λ] = 1
   // As heat, not as temperature: on a plateau a hundredth of a kelvin would be all of the ice.
   const cl = heatCapacity_kJ_kgK(matter, false, h)
-  const change = cl * cl * wander_K2_s * dt_s
+  // It wanders and is pulled back: after a gap of months it is no less certain than after a day.
+  const pull_per_s = coupling / cl
+  const wandered_s = -Math.expm1(-2 * pull_per_s * dt_s) / (2 * pull_per_s)
+  const change = cl * cl * wander_K2_s * wandered_s
   const flux = couplingNoise * (h - h0)
   q[H] = change + flux * flux
   q[Δ] = drive.deltaQ_K2
