@@ -135,7 +135,7 @@ export const startProgram = async (settings: Settings): Promise<Program> => {
 
     const intake = (): Intake => {
       const { readings, duplicates, conflicts, refused, bad } = log.counts()
-      const away = [...brokers.values()].find((b) => b.state === 'away')
+      const away = [...brokers.values()].find((b) => b.why !== null)
       return {
         readings,
         duplicates,
