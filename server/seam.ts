@@ -70,9 +70,7 @@ export interface IngestLog {
 
 export interface StateStore {
   /** The state last saved for a partition, with the offset it stands for; null when there is none. */
-  load(
-    part: Part,
-  ): {
+  load(part: Part): {
     readonly offset: Offset
     readonly model: string
     readonly configRevision: number

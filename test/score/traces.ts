@@ -164,10 +164,10 @@ export const trace = (
   let seq = 0
   let airSeq = 0
   let stuckAt: number | null = null
-  let elsewhere = 0
+  let _elsewhere = 0
   const dt = 5
   const phase = Math.floor(g.next() * interval)
-  const airInterval = interval < 60 ? 60 : interval
+  const airInterval = Math.max(interval, 60)
   const airPhase = Math.floor(g.next() * airInterval)
   const swapLevel = g.between(-3, 3)
   const say = (id: string, t: number, y: number, n: number, receivedAfter = 2) => {
@@ -225,7 +225,7 @@ export const trace = (
       if (kind === 'stuck' && inMishap) y = stuckAt ??= y
       if (kind === 'codes' && inMishap) y = g.pick([85, -127, y, y])
       if (kind === 'fahrenheit' && inMishap) y = 1.8 * y + 32
-      elsewhere += 1
+      _elsewhere += 1
       const missing = (kind === 'silent' && inMishap) || g.next() < 0.01
       seq += 1
       if (missing) continue
