@@ -318,10 +318,7 @@ export const startProgram = async (settings: Settings): Promise<Program> => {
       )
       server.listen(settings.port, settings.host, resolve)
     })
-    undo.push(async () => {
-      await feed.close()
-      server.closeAllConnections()
-    })
+    undo.push(() => feed.close())
     const timer = setInterval(() => watch.tick(clock.now_ms()), tick_ms)
     undo.push(() => clearInterval(timer))
 

@@ -22,7 +22,10 @@ export const liveFeed = (
   server: HttpServer,
   batch: () => Changed | null,
   allow: (host: string | undefined, origin: string | undefined) => boolean,
-): { close(): Promise<void> } => {
+): {
+  /** Closes the server too: its feed, and every connection to it. */
+  close(): Promise<void>
+} => {
   const io = new Server(server, {
     path: '/live',
     transports: ['websocket'],
@@ -48,7 +51,10 @@ export const liveFeed = (
   return {
     async close() {
       clearInterval(timer)
-      await io.close()
+      const closed = io.close()
+      // It waits for every connection, and a browser keeps spare ones open that never ask anything.
+      server.closeAllConnections()
+      await closed
     },
   }
 }

@@ -213,8 +213,6 @@ export const startFixture = async (options: FixtureOptions = {}): Promise<Fixtur
     },
     async close() {
       await feed.close()
-      server.closeAllConnections()
-      server.close()
     },
   }
 }

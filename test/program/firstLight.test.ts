@@ -1,4 +1,5 @@
 import { execFileSync } from 'node:child_process'
+import { connect } from 'node:net'
 import { describe, expect, onTestFinished, test } from 'vitest'
 import type { RefusedView } from '../../config/schema/api.js'
 import { launchBrowser } from '../browser/chromium.js'
@@ -305,4 +306,14 @@ describe('who may reach it', () => {
     expect(page.headers.get('content-security-policy')).not.toMatch(/unsafe/)
     expect((await fetch(`${running.http}/api/v1/nothing`)).status).toBe(404)
   })
+})
+
+test('SIGTERM ends it at once, though a browser holds a spare connection that asks nothing', async () => {
+  const { running } = await startSmall()
+  const { hostname, port } = new URL(running.http)
+  const spare = connect(Number(port), hostname)
+  await new Promise<void>((resolve) => spare.once('connect', () => resolve()))
+  onTestFinished(() => void spare.destroy())
+  // Its own patience would end it with 1.
+  expect(await running.stop()).toBe(0)
 })
