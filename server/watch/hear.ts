@@ -1,8 +1,8 @@
 import { advance, unknownsOf } from './advance.js'
-import { biasOf, sensorOf, touchOnIce, Δ } from './estimate.js'
+import { biasOf, type Drive, sensorOf, touchOnIce, Δ } from './estimate.js'
 import { at, type Gauss } from './gauss.js'
 import { forkOdds, gentleAfter, opensFork, returned, wronglyAside } from './lookalikes.js'
-import { type Matter, temperature_C } from './matter.js'
+import { heatCapacity_kJ_kgK, ice_kg_kg, type Matter, temperature_C } from './matter.js'
 import { type Group, type Plan, valueAt } from './plan.js'
 import {
   type Carried,
@@ -136,6 +136,7 @@ const waitRange_s: readonly [number, number] = [10, 300]
 /**
  * Does what is known now amount to calling it turned? Once called it stays.
  *
+ * @param apart_s    since the reading before: a probe that is still on its way shows nothing at once
  * @param settled_z  how far the reading is from the plateau of the heaviest story with ice
  */
 const calledBy = (
@@ -143,6 +144,7 @@ const calledBy = (
   t_ms: number,
   trusted: boolean,
   T90_s: number,
+  apart_s: number,
   settled_z: number,
 ): Partial<ItemTrack> => {
   const p = turnedProbability(track)
@@ -154,7 +156,7 @@ const calledBy = (
   const wait_ms = 1000 * Math.min(most, Math.max(least, wait_T90 * T90_s))
   // A rise that does not end on the item's own freezing point is no call, whatever it is.
   if (settled_z > nearPlateau_z) return { strong, strong_ms }
-  const atOnce = p >= certain && settled_z < onPlateau_z
+  const atOnce = p >= certain && settled_z < onPlateau_z && apart_s >= T90_s
   if (atOnce || (strong >= needed && t_ms - strong_ms >= wait_ms)) {
     const iced = track.bank.filter((b) => b.kind !== 'liquid')
     const placed = iced.reduce((s, b) => s + (b.placedAsIce ? Math.exp(b.w) : 0), 0)
@@ -374,7 +376,14 @@ export function hearOwn(
   }
   let fork = track.fork
   let forkBank = moved.forked.map((c) => c.branch)
-  if (fork !== null && fork.slot === k) {
+  if (fork?.shelved) {
+    if (fork.slot === k && unmade(all, moved.forked, n, matter, sight, moved.drive)) {
+      const inFork = tell(moved.forked, n, sight, track.base_C, jump, stretch)
+      const called = (track.called?.at_ms ?? 0) < fork.since_ms ? track.called : null
+      return withSlot({ ...track, called, bank: inFork.bank, fork: null, strong: 0 }, k, trusting)
+    }
+    if (t_ms - fork.since_ms > shelvedFor_ms) fork = null
+  } else if (fork !== null && fork.slot === k) {
     const inFork = tell(moved.forked, n, sight, track.base_C, jump, stretch)
     const { odds, back } = forkOdds(fork, told.log, inFork.log, y_C, R_K2)
     if (back) {
@@ -389,12 +398,14 @@ export function hearOwn(
           t_ms,
           true,
           probe.given.T90_s,
+          apart_s,
           fromPlateau_z(track, matter, sight, prior, kind === 'wall'),
         ),
       }
     }
-    fork = odds < notApart ? null : { ...fork, odds, level_C: y_C }
-    if (fork !== null && odds > apartFrom)
+    if (odds >= notApart) fork = { ...fork, odds, level_C: y_C }
+    else fork = iceWeight(told.bank) > 0.5 ? { ...fork, odds: shelvedOdds, shelved: true } : null
+    if (fork !== null && !fork.shelved && odds > apartFrom)
       return apart(
         withSlot(thinOnly(track, n), k, heard),
         { ...fork, bank: thinned(forkBank, n) },
@@ -405,7 +416,8 @@ export function hearOwn(
     const inFork = tell(moved.forked, n, sight, track.base_C, jump, stretch)
     fork = { ...fork, odds: fork.odds + inFork.log - told.log }
     forkBank = [...inFork.bank]
-  } else if (kind !== 'sibling') {
+  }
+  if ((fork === null || fork.shelved) && track.fork === fork && kind !== 'sibling') {
     const odds = opensFork(
       told.log,
       foreseen.innovation,
@@ -418,6 +430,7 @@ export function hearOwn(
         slot: k,
         since_ms: t_ms,
         odds,
+        shelved: false,
         bank: [],
         level_C: y_C,
         trusted_ms: last.trusted_ms,
@@ -436,7 +449,7 @@ export function hearOwn(
     trusting,
   )
   track = { ...track, bank: committed(track, n) }
-  const doubtful = track.fork !== null && track.fork.odds > 0
+  const doubtful = track.fork !== null && !track.fork.shelved && track.fork.odds > 0
   const next: ItemTrack = {
     ...track,
     ...calledBy(
@@ -444,12 +457,54 @@ export function hearOwn(
       t_ms,
       !doubtful && kind !== 'sibling',
       probe.given.T90_s,
+      apart_s,
       fromPlateau_z(track, matter, sight, prior, kind === 'wall'),
     ),
   }
   // The doubt has been weighed in the call; it must not come back on another occasion.
   const justCalled = next.called !== null && track.called === null
-  return justCalled ? { ...next, fork: null } : next
+  return justCalled && next.fork !== null
+    ? { ...next, fork: { ...next.fork, odds: shelvedOdds, shelved: true } }
+    : next
+}
+
+const iceWeight = (bank: readonly Branch[]): number =>
+  bank.reduce((sum, b) => sum + (b.kind === 'liquid' ? 0 : Math.exp(b.w)), 0)
+
+/** How long the story over which a turn was called is kept, ms. */
+const shelvedFor_ms = 8 * 3_600_000
+/** It carries no weight meanwhile (log odds). */
+const shelvedOdds = -60
+/** A drop from the plateau that ice cannot make: beyond what could have frozen through, K. */
+const leastDrop_K = 1
+const dropMargin = 1.5
+const stillSlush = 0.8
+
+/**
+ * Does a reading unmake a call? It falls from the plateau faster than ice could have frozen through,
+ * and to where the liquid story, which heard nothing since, expects it: the probe was elsewhere.
+ */
+const unmade = (
+  all: readonly Carried[],
+  forked: readonly Carried[],
+  n: number,
+  matter: Matter,
+  sight: Sight,
+  drive: Drive,
+): boolean => {
+  const iced = all.filter((c) => c.branch.kind === 'ice')
+  if (iced.length === 0 || forked.length === 0) return false
+  const top = iced.reduce((a, b) => (b.branch.w > a.branch.w ? b : a)).branch
+  const h = top.g[0]!
+  if (ice_kg_kg(matter, h) > stillSlush * matter.solidIce_kg_kg) return false
+  const T = temperature_C(matter, true, h)
+  const env_C = drive.base1_C + top.g[Δ]!
+  const rate = (2 * matter.coupling_kW_kgK) / heatCapacity_kJ_kgK(matter, false, matter.hFreezing)
+  const couldFall_K = Math.max(0, T - env_C) * -Math.expm1(-rate * drive.dt_s)
+  const fell_K = -expectation(all, n, sight).innovation
+  if (fell_K < leastDrop_K + dropMargin * couldFall_K) return false
+  const liquid = forked.filter((c) => c.branch.kind !== 'ice')
+  return liquid.length > 0 && expectation(liquid, n, sight).z < 2.5
 }
 
 /** A sensor known to stand at a reading, whatever it was thought to: nothing else is learned. */

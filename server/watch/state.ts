@@ -54,6 +54,8 @@ export type Fork = {
   /** Log of its odds against the story in which the probe reads the item. */
   readonly odds: number
   readonly bank: readonly Branch[]
+  /** A turn was called over it: it is kept only for the day the probe shows the call was wrong. */
+  readonly shelved: boolean
   readonly level_C: number
   /** What the slot last had believed before. */
   readonly trusted_ms: number
