@@ -17,10 +17,6 @@ try {
     console.log(help())
   } else {
     const program = await startProgram(settings)
-    console.log(
-      `Hoarline is ready: ${[program.http, program.mqtt].filter((a) => a !== null).join('  ')}`,
-    )
-    console.log(`Open: ${program.http}/`)
     let stopping = false
     const stop = () => {
       if (stopping) process.exit(1)
@@ -34,8 +30,13 @@ try {
         },
       )
     }
+    // Before the ready line: whoever reads it may stop us at once.
     process.on('SIGTERM', stop)
     process.on('SIGINT', stop)
+    console.log(
+      `Hoarline is ready: ${[program.http, program.mqtt].filter((a) => a !== null).join('  ')}`,
+    )
+    console.log(`Open: ${program.http}/`)
   }
 } catch (error) {
   refuse(error)
