@@ -351,7 +351,14 @@ export function hearOwn(
 
   const unit = plan.units[track.unit]!
   const matter = item.matter[track.matter]!.value
-  const jump = jumpOf(unit, t_ms, track.based, kind === 'wall', moved.drive.dt_s)
+  const jump = jumpOf(
+    unit,
+    t_ms,
+    track.based,
+    kind === 'wall',
+    moved.drive.dt_s,
+    track.based ? Math.max(track.base_C, moved.drive.base0_C) : null,
+  )
   const prior = slotPrior(plan, item.slots[k]!, matter.gradient)
   const stretch: Stretch = {
     slot: k,

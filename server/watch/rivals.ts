@@ -157,6 +157,15 @@ export function turnedWithin(
     for (let k = 0; k < n; k++) if (k !== s) g[at(n, s, k)] = g[at(n, s, k)]! * keep
     const own = at(n, s, s)
     g[own] = g[own]! * keep * keep + J * J * Math.max(0, L2 - L * L)
+    if (outside) {
+      // What was learned of the share was learned on a liquid; beside ice it is to be seen anew.
+      const more = drive.slots[slot]!.shareVar
+      const i = shareOf(slot)
+      const pull = soft * (temperature_C(matter, true, h) - env_C) * (1 - L)
+      g[at(n, i, i)] = g[at(n, i, i)]! + more
+      g[at(n, s, i)] = g[at(n, s, i)]! + more * pull
+      g[own] = g[own]! + more * pull * pull
+    }
     // On the plateau the reading stands on the configured line, which is itself uncertain: from
     // here on the bias of the probe and the error of the line are seen as one.
     const b = at(n, biasOf(slot), biasOf(slot))

@@ -50,6 +50,9 @@ const coldest_C: Record<StorageUnitKind, number> = {
 /** A room is seldom warmer than its stated surroundings by more than this, K. */
 const overAmbient_K = 8
 
+/** No corner of a store is warmer than its measured air by more than this, K [common practice]. */
+const overAir_K = 6
+
 /**
  * How often, and how far, what surrounds an item jumps: a door, a hand, a defrost that no air probe
  * sees. With an air probe the air itself is known and only the item's own corner may jump.
@@ -60,13 +63,17 @@ export function jumpOf(
   measured: boolean,
   onWall: boolean,
   dt_s: number,
+  air_C: number | null,
 ): Jump {
   const given = valueAt(unit.given, t_ms)
   const every_s = measured ? 40 * 3600 : onWall ? 14_400 : 1800
   return {
     chance: Math.min(0.3, 1 - Math.exp(-Math.max(dt_s, 1) / every_s)),
     size_K: measured ? 2.5 : 9,
-    warmest_C: (given.ambient_C ?? 22) + overAmbient_K,
+    warmest_C: Math.min(
+      (given.ambient_C ?? 22) + overAmbient_K,
+      air_C === null ? Number.POSITIVE_INFINITY : air_C + overAir_K,
+    ),
     coldest_C: coldest_C[given.kind],
   }
 }
