@@ -8,6 +8,9 @@ import { normal } from './trust.js'
 
 /** What the model leaves out, even in a still body, K [common practice]. */
 const model_K = 0.03
+/** A skin is not a product, however well the two were told apart, K and per K to the surroundings. */
+const wall_K = 0.1
+const wallShare = 0.03
 /** Share of the inner gradient that the mean may be off by. */
 const gradientShare = 0.3
 
@@ -52,7 +55,10 @@ const ofBranch = (
   const c = heatCapacity_kJ_kgK(matter, onIce, h)
   let T_C = temperature_C(matter, onIce, h)
   const env_C = track.base_C + b.g[Δ]!
-  const location_K = gradientShare * matter.gradient * Math.abs(T_C - env_C)
+  const away_K = Math.abs(T_C - env_C)
+  const walls = item.slots.length > 0 && item.slots.every((s) => s.kind === 'wall')
+  const location_K =
+    gradientShare * matter.gradient * away_K + (walls ? wall_K + wallShare * away_K : 0)
   const own2 = b.g[at(n, H, H)]! / (c * c)
   let line2 = 0
   if (onIce && h < matter.hFreezing) {
