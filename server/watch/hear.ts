@@ -137,6 +137,7 @@ const waitRange_s: readonly [number, number] = [10, 300]
  * Does what is known now amount to calling it turned? Once called it stays.
  *
  * @param apart_s    since the reading before: a probe that is still on its way shows nothing at once
+ * @param warmAir    the air that serves it is above its line
  * @param settled_z  how far the reading is from the plateau of the heaviest story with ice
  */
 const calledBy = (
@@ -145,10 +146,12 @@ const calledBy = (
   trusted: boolean,
   T90_s: number,
   apart_s: number,
+  warmAir: boolean,
   settled_z: number,
 ): Partial<ItemTrack> => {
   const p = turnedProbability(track)
-  const isStrong = trusted && p >= probable
+  // While its measured air is warmer than its line a rise proves little: it may just be warmed.
+  const isStrong = trusted && p >= (warmAir ? certain : probable)
   const strong = !trusted ? track.strong : isStrong ? track.strong + 1 : 0
   const strong_ms = isStrong && track.strong > 0 ? track.strong_ms : t_ms
   if (track.called !== null || !isStrong) return { strong, strong_ms }
@@ -360,6 +363,7 @@ export function hearOwn(
     track.based ? Math.max(track.base_C, moved.drive.base0_C) : null,
   )
   const prior = slotPrior(plan, item.slots[k]!, matter.gradient)
+  const warmAir = track.based && track.base_C > matter.freezing_C
   const stretch: Stretch = {
     slot: k,
     bias_K: 1.2 * probe.given.accuracy_K + 2 * matter.uFreezing_K + 0.02,
@@ -406,6 +410,7 @@ export function hearOwn(
           true,
           probe.given.T90_s,
           apart_s,
+          warmAir,
           fromPlateau_z(track, matter, sight, prior, kind === 'wall'),
         ),
       }
@@ -465,6 +470,7 @@ export function hearOwn(
       !doubtful && kind !== 'sibling',
       probe.given.T90_s,
       apart_s,
+      warmAir,
       fromPlateau_z(track, matter, sight, prior, kind === 'wall'),
     ),
   }

@@ -8,6 +8,7 @@ import {
   shareOf,
   touchOnIce,
   Δ,
+  Λ,
 } from './estimate.js'
 import { at, correct, type Gauss, mix, varianceOfSum } from './gauss.js'
 import { heatCapacity_kJ_kgK, type Matter, temperature_C } from './matter.js'
@@ -31,6 +32,9 @@ const ν = 5
 
 /** log Γ((ν+1)/2) − log Γ(ν/2) − ½ log(νπ) for ν = 5. */
 const studentNorm = Math.log(0.3796067)
+
+/** How far, relatively, the coupling may change when ice forms [common practice]. */
+const iceCoupling = 0.08
 
 /** Log density of a reading that is z standard deviations off, with spread √S. */
 export const logDensity = (z2: number, S: number): number =>
@@ -136,6 +140,8 @@ export function turnedWithin(
   const g: Gauss = [...liquid.g]
   const h = g[H]!
   const from_C = temperature_C(matter, false, h)
+  // A body with ice in it is coupled a little otherwise than the liquid it was.
+  g[at(n, Λ, Λ)] = g[at(n, Λ, Λ)]! + iceCoupling * iceCoupling
   const jump_K = temperature_C(matter, true, h) - from_C
   const cRatio = heatCapacity_kJ_kgK(matter, false, h) / heatCapacity_kJ_kgK(matter, true, h)
   for (let slot = 0; slot < drive.tau_s.length; slot++) {
