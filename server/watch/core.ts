@@ -1,6 +1,7 @@
 import { advance, ownSpeaks, thin, unknownsOf } from './advance.js'
 import { hearAir, hearNeighbour } from './air.js'
-import { hearOwn, surroundingsOf, turnedProbability } from './hear.js'
+import { turnedProbability } from './calling.js'
+import { hearOwn, surroundingsOf } from './hear.js'
 import { followed } from './phase.js'
 import { type Group, type Plan, valueAt } from './plan.js'
 import type { Core, Heard, ItemTrack } from './state.js'

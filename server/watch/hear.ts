@@ -1,25 +1,16 @@
 import { advance, unknownsOf } from './advance.js'
-import { biasOf, type Drive, sensorOf, touchOnIce, Δ } from './estimate.js'
+import { calledBy, committed, fromPlateau_z, unmade } from './calling.js'
+import { biasOf, sensorOf, Δ } from './estimate.js'
 import { at, type Gauss } from './gauss.js'
 import { forkOdds, gentleAfter, opensFork, returned, wronglyAside } from './lookalikes.js'
-import { heatCapacity_kJ_kgK, ice_kg_kg, type Matter, temperature_C } from './matter.js'
+import { temperature_C } from './matter.js'
 import { type Group, type Plan, valueAt } from './plan.js'
-import {
-  type Carried,
-  credible,
-  liquidSeen,
-  normalised,
-  type Sight,
-  type Stretch,
-  seen,
-  sumLogs,
-  thinned,
-  weigh,
-} from './rivals.js'
-import { type SlotPrior, slotPrior } from './slots.js'
+import { normalised, type Sight, type Stretch, thinned } from './rivals.js'
+import { slotPrior } from './slots.js'
 import { bankOf } from './start.js'
 import type { Branch, Core, Fork, ItemTrack, SlotTrack } from './state.js'
 import { jumpOf } from './surroundings.js'
+import { expectation, tell } from './tell.js'
 import { isStuck, looksFahrenheit, noiseAfter, runOf } from './trust.js'
 
 /** Noise of a good probe beyond its resolution, and the part of its accuracy that flickers, K. */
@@ -31,187 +22,6 @@ const siblingNoise_K = 0.3
 /** How fast the scale of the innovations is learned, and its bounds. */
 const scaleGain = 0.06
 const scaleRange: readonly [number, number] = [0.4, 25]
-
-/** P(ice has formed at some time), over both stories of the probe. */
-export const turnedProbability = (track: ItemTrack): number => {
-  const of = (bank: readonly Branch[]) =>
-    bank.reduce((sum, b) => sum + (b.kind === 'liquid' ? 0 : Math.exp(b.w)), 0)
-  const own = of(track.bank)
-  if (track.fork === null) return Math.min(1, own)
-  const apart = 1 / (1 + Math.exp(-track.fork.odds))
-  return Math.min(1, (1 - apart) * own + apart * of(track.fork.bank))
-}
-
-type Told = { readonly bank: readonly Branch[]; readonly log: number; readonly z2: number }
-
-/**
- * Stories that foresee a reading within this of each other (nats) are equally good: so small a
- * difference comes from how their noise is modelled, and over a thousand quiet readings it would
- * decide.
- */
-const indifference = 0.1
-const beyond = (nats: number): number =>
-  Math.sign(nats) * Math.max(0, Math.abs(nats) - indifference)
-
-/** Log density that the heaviest liquid story gave the reading; null where there is none. */
-const liquidLog = (
-  all: readonly Carried[],
-  told: readonly { readonly branch: Branch }[],
-): number | null => {
-  let best = -1
-  for (const [i, c] of all.entries())
-    if (c.branch.kind !== 'ice' && (best < 0 || c.branch.w > all[best]!.branch.w)) best = i
-  return best < 0 ? null : told[best]!.branch.w - all[best]!.branch.w
-}
-
-/** A story that has just stretched bias or share further than is credible weighs less. */
-const judgedBy = (now: Branch, before: Branch, stretch: Stretch): Branch => {
-  const loss = credible(now.g, stretch) - credible(before.g, stretch)
-  return loss < 0 ? { ...now, w: now.w + loss } : now
-}
-
-/** A bank that has seen a reading, the log density it gave it, and the best story's z². */
-const tell = (
-  all: readonly Carried[],
-  n: number,
-  sight: Sight,
-  base_C: number,
-  jump: ReturnType<typeof jumpOf>,
-  stretch: Stretch,
-): Told => {
-  let stirred = 0
-  const told = all.map((c) => {
-    if (c.branch.kind === 'ice') {
-      const by = weigh(c.branch, n, sight)
-      const branch = seen(c.branch, n, sight, by)
-      return { branch: judgedBy(branch, c.branch, stretch), z2: by.z * by.z }
-    }
-    const { branch, calm, share } = liquidSeen(c, n, sight, base_C, jump)
-    stirred = Math.max(stirred, share * Math.exp(c.branch.w))
-    return {
-      branch: judgedBy(branch, c.branch, stretch),
-      z2: calm.z * calm.z * (1 - share) + share,
-    }
-  })
-  const reference = liquidLog(all, told)
-  const even = told.map((x, i) => {
-    if (reference === null || x.branch.kind !== 'ice') return x
-    const before = all[i]!.branch.w
-    const gain = x.branch.w - before
-    return { ...x, branch: { ...x.branch, w: before + reference + beyond(gain - reference) } }
-  })
-  const log = sumLogs(even.map((x) => x.branch.w))
-  const heaviest = even.reduce((a, b) => (b.branch.w > a.branch.w ? b : a))
-  // What stirs the liquid story stirs the others too, so that a poor UA never looks like ice.
-  const extra = 0.3 * stirred * jump.size_K ** 2
-  const bank = even.map(({ branch }) => {
-    if (branch.kind !== 'ice' || extra < 1e-6) return branch
-    const g = [...branch.g]
-    g[at(n, Δ, Δ)] = g[at(n, Δ, Δ)]! + extra
-    return { ...branch, g }
-  })
-  return { bank: thinned(bank, n), log, z2: heaviest.z2 }
-}
-
-/** What the heaviest story expects of a slot, and how sure it is: for runs and returns. */
-const expectation = (all: readonly Carried[], n: number, sight: Sight) => {
-  const top = all.reduce((a, b) => (b.branch.w > a.branch.w ? b : a)).branch
-  const by = weigh(top, n, sight)
-  return { expected_C: top.g[sensorOf(sight.slot)]! + top.g[biasOf(sight.slot)]!, ...by }
-}
-
-/** Readings on which ice is at least this probable count towards a call. */
-const probable = 0.95
-const certain = 0.9999
-const needed = 2
-/** A reading so near to where a settled probe would stand on the plateau speaks for itself. */
-const onPlateau_z = 2.5
-/** Farther than this from where its own freezing point would show, by what is vouched for. */
-const nearPlateau_z = 3
-const slack_K = 0.1
-/** A rise must have come to its end: so long, in lags of the probe, must it look like ice. */
-const wait_T90 = 1.5
-const waitRange_s: readonly [number, number] = [10, 300]
-
-/**
- * Does what is known now amount to calling it turned? Once called it stays.
- *
- * @param apart_s    since the reading before: a probe that is still on its way shows nothing at once
- * @param warmAir    the air that serves it is above its line
- * @param settled_z  how far the reading is from the plateau of the heaviest story with ice
- */
-const calledBy = (
-  track: ItemTrack,
-  t_ms: number,
-  trusted: boolean,
-  T90_s: number,
-  apart_s: number,
-  warmAir: boolean,
-  settled_z: number,
-): Partial<ItemTrack> => {
-  const p = turnedProbability(track)
-  // While its measured air is warmer than its line a rise proves little: it may just be warmed.
-  const isStrong = trusted && p >= (warmAir ? certain : probable)
-  const strong = !trusted ? track.strong : isStrong ? track.strong + 1 : 0
-  const strong_ms = isStrong && track.strong > 0 ? track.strong_ms : t_ms
-  if (track.called !== null || !isStrong) return { strong, strong_ms }
-  const [least, most] = waitRange_s
-  const wait_ms = 1000 * Math.min(most, Math.max(least, wait_T90 * T90_s))
-  // A rise that does not end on the item's own freezing point is no call, whatever it is.
-  if (settled_z > nearPlateau_z) return { strong, strong_ms }
-  const atOnce = p >= certain && settled_z < onPlateau_z && apart_s >= T90_s
-  if (atOnce || (strong >= needed && t_ms - strong_ms >= wait_ms)) {
-    const iced = track.bank.filter((b) => b.kind !== 'liquid')
-    const placed = iced.reduce((s, b) => s + (b.placedAsIce ? Math.exp(b.w) : 0), 0)
-    const placedAsIce = placed > 0.5
-    return { strong, strong_ms, called: { at_ms: t_ms, reckoned: placedAsIce, placedAsIce } }
-  }
-  return { strong, strong_ms }
-}
-
-/** How far a reading is from where a settled probe would stand on the heaviest story with ice. */
-const fromPlateau_z = (
-  track: ItemTrack,
-  matter: Matter,
-  sight: Sight,
-  prior: SlotPrior,
-  outside: boolean,
-): number => {
-  const iced = track.bank.filter((b) => b.kind === 'ice')
-  if (iced.length === 0) return Number.POSITIVE_INFINITY
-  const top = iced.reduce((a, b) => (b.w > a.w ? b : a))
-  const T = temperature_C(matter, true, top.g[0]!)
-  const soft = touchOnIce(matter, true, outside, top.g[0]!)
-  const rest = outside ? 1 - prior.share * soft : (1 - prior.share) * soft
-  const away_K = (outside ? track.base_C + top.g[Δ]! : track.felt_C) - T
-  const spread2 = prior.shareVar * soft * soft * away_K * away_K
-  // Not the scaled noise: a model that fits badly must not bring the plateau nearer.
-  const u2 = prior.biasVar_K2 + matter.uFreezing_K ** 2 + spread2 + slack_K ** 2
-  return Math.abs(sight.y_C - T - rest * away_K) / Math.sqrt(u2)
-}
-
-/** Once a turn is called the liquid story keeps no more than this: the verdict stands by its word. */
-const doubtKept = Math.log(0.05)
-
-const committed = (track: ItemTrack, n: number): readonly Branch[] => {
-  if (track.called === null || (track.called.reckoned && !track.called.placedAsIce))
-    return track.bank
-  const over = track.bank.some((b) => b.kind === 'liquid' && b.w > doubtKept)
-  const iced = track.bank.some((b) => b.kind !== 'liquid')
-  if (!over || !iced) return track.bank
-  const cut = track.bank.map((b) =>
-    b.kind === 'liquid' ? { ...b, w: Math.min(b.w, doubtKept) } : b,
-  )
-  return thinned(raised(cut), n)
-}
-
-/** Stories with ice take up what the liquid one was not left. */
-const raised = (bank: readonly Branch[]): Branch[] => {
-  const liquid = sumLogs(bank.filter((b) => b.kind === 'liquid').map((b) => b.w))
-  const ice = sumLogs(bank.filter((b) => b.kind !== 'liquid').map((b) => b.w))
-  const rest = Math.log1p(-Math.exp(Math.min(liquid, -1e-9)))
-  return bank.map((b) => (b.kind === 'liquid' ? b : { ...b, w: b.w - ice + rest }))
-}
 
 /** Lags after which a probe stands where it went. */
 const settling_T90 = 3
@@ -488,37 +298,6 @@ const iceWeight = (bank: readonly Branch[]): number =>
 const shelvedFor_ms = 8 * 3_600_000
 /** It carries no weight meanwhile (log odds). */
 const shelvedOdds = -60
-/** A drop from the plateau that ice cannot make: beyond what could have frozen through, K. */
-const leastDrop_K = 1
-const dropMargin = 1.5
-const stillSlush = 0.8
-
-/**
- * Does a reading unmake a call? It falls from the plateau faster than ice could have frozen through,
- * and to where the liquid story, which heard nothing since, expects it: the probe was elsewhere.
- */
-const unmade = (
-  all: readonly Carried[],
-  forked: readonly Carried[],
-  n: number,
-  matter: Matter,
-  sight: Sight,
-  drive: Drive,
-): boolean => {
-  const iced = all.filter((c) => c.branch.kind === 'ice')
-  if (iced.length === 0 || forked.length === 0) return false
-  const top = iced.reduce((a, b) => (b.branch.w > a.branch.w ? b : a)).branch
-  const h = top.g[0]!
-  if (ice_kg_kg(matter, h) > stillSlush * matter.solidIce_kg_kg) return false
-  const T = temperature_C(matter, true, h)
-  const env_C = drive.base1_C + top.g[Δ]!
-  const rate = (2 * matter.coupling_kW_kgK) / heatCapacity_kJ_kgK(matter, false, matter.hFreezing)
-  const couldFall_K = Math.max(0, T - env_C) * -Math.expm1(-rate * drive.dt_s)
-  const fell_K = -expectation(all, n, sight).innovation
-  if (fell_K < leastDrop_K + dropMargin * couldFall_K) return false
-  const liquid = forked.filter((c) => c.branch.kind !== 'ice')
-  return liquid.length > 0 && expectation(liquid, n, sight).z < 2.5
-}
 
 /** A sensor known to stand at a reading, whatever it was thought to: nothing else is learned. */
 const sensorAt = (
