@@ -133,6 +133,13 @@ export const startProgram = async (settings: Settings): Promise<Program> => {
     let unsaved: readonly Judgement[] = []
     const notEvaluated = new Set<string>()
 
+    /** Wall seconds since the oldest reading that is not judged yet was received; 0 when all are. */
+    const behind_s = (): number => {
+      const oldest = onTheWay[0]
+      if (oldest === undefined) return 0
+      const speed = clock.map()?.speed ?? 1
+      return Math.max(0.1, Math.round((clock.now_ms() - oldest.receivedAt_ms) / speed / 100) / 10)
+    }
     const intake = (): Intake => {
       const { readings, duplicates, conflicts, refused, bad } = log.counts()
       const away = [...brokers.values()].find((b) => b.why !== null)
@@ -143,14 +150,7 @@ export const startProgram = async (settings: Settings): Promise<Program> => {
         refused,
         bad,
         outage: log.outage()?.message ?? away?.why ?? null,
-        behind_s: Math.max(
-          0,
-          Math.round(
-            (clock.now_ms() - (onTheWay[0]?.receivedAt_ms ?? clock.now_ms())) /
-              1000 /
-              (clock.map()?.speed ?? 1),
-          ),
-        ),
+        behind_s: behind_s(),
         notEvaluated: [...notEvaluated],
       }
     }
@@ -287,8 +287,8 @@ export const startProgram = async (settings: Settings): Promise<Program> => {
                 clock.setSpeed(speed)
               },
         health: () => {
-          const { outage, behind_s } = intake()
-          return { live: true, ready: outage === null, outage, behind_s }
+          const { outage } = intake()
+          return { live: true, ready: outage === null, outage, behind_s: behind_s() }
         },
       },
       join(root, 'dist', 'client'),

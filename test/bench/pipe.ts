@@ -19,17 +19,16 @@ const broker = await openBroker({
     const [record] = JSON.parse(Buffer.from(payload).toString()) as {
       n: string
       v: number
-      t: number
     }[]
     if (record === undefined) return
     const reading = {
       probe: topic as never, // the pipe knows no probes; the topic stands for one
-      t_ms: Math.round(record.t * 1000),
+      t_ms: Date.now(),
       receivedAt_ms: Date.now(),
       celsius: record.v,
       seq: -1,
       quality: 'good' as const,
-      timeSource: 'device' as const,
+      timeSource: 'receipt' as const,
     }
     await log.append([{ part: 0, reading }], [])
     latest.set(topic, record.v)
