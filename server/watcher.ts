@@ -7,6 +7,9 @@ import type { FromWatch, Outlook, ToWatch, WatchStart } from './watching.js'
 /** Readings that may be on their way to the watch; past it, it reads them from disk itself. */
 const mostUnderWay = 20_000
 
+/** So many readings, or what came within so long, go to the watch in one message. */
+const together = { readings: 200, wait_ms: 10 } as const
+
 export type Watcher = {
   /** Readings that are on disk now. */
   hear(readings: readonly LoggedReading[]): void
@@ -34,6 +37,18 @@ export const startWatch = async (
   let asked = 0
   const answers = new Map<number, (value: Outlook | ItemCurves | null) => void>()
   const post = (message: ToWatch) => worker.postMessage(message)
+  let waiting: LoggedReading[] = []
+  let timer: NodeJS.Timeout | null = null
+  /** The watch lags: what came since is not sent, the next tick says how far there is more on disk. */
+  let hole = false
+  /** A message between threads costs as much as a verdict, so readings travel together. */
+  const flush = () => {
+    if (timer !== null) clearTimeout(timer)
+    timer = null
+    if (waiting.length > 0) post({ kind: 'readings', after: sent, readings: waiting })
+    sent = waiting.reduce((most, r) => Math.max(most, r.offset), sent)
+    waiting = []
+  }
 
   await new Promise<void>((resolve, reject) => {
     worker.once('error', reject)
@@ -65,21 +80,28 @@ export const startWatch = async (
     hear(readings) {
       const fresh = readings.filter((r) => r.kept !== 'duplicate')
       const last = fresh.reduce((most, r) => Math.max(most, r.offset), newest)
-      // One that lags is told of more by the next tick, and reads it from disk.
-      if (fresh.length > 0 && sent === newest && last - done <= mostUnderWay) {
-        post({ kind: 'readings', after: sent, readings: fresh })
-        sent = last
+      if (fresh.length > 0 && last - done > mostUnderWay) hole = true
+      if (fresh.length > 0 && !hole) {
+        waiting.push(...fresh)
+        if (waiting.length >= together.readings) flush()
+        else timer ??= setTimeout(flush, together.wait_ms)
       }
       newest = last
     },
     tick(now_ms) {
+      flush()
       post({ kind: 'tick', now_ms, upTo: newest })
-      if (newest - done <= mostUnderWay) sent = newest
+      // It reads up to there from disk before it takes another message.
+      if (newest - done <= mostUnderWay) {
+        hole = false
+        sent = newest
+      }
     },
     // The kind of answer follows the kind of question.
     outlook: (item, now_ms) => ask('outlook', item, now_ms) as Promise<Outlook | null>,
     curves: (item, now_ms) => ask('curves', item, now_ms) as Promise<ItemCurves | null>,
     async stop() {
+      flush()
       const ended = new Promise((resolve) => worker.once('exit', resolve))
       post({ kind: 'stop' })
       await ended
