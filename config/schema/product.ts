@@ -26,11 +26,20 @@ const notAboveMelting = must<number>(
   'give °C below zero as a negative number',
 )
 
+/** Water of a product: with hardly any, nothing in it freezes and every figure is noise. */
+const water_kg_kg = fraction_kg_kg.check(
+  must(
+    (v) => v >= 0.001,
+    'with so little water nothing freezes',
+    'give kg of water per kg of product, 0.001 or more',
+  ),
+)
+
 const MeasuredFreezing = z
   .strictObject({
     kind: z.literal('measured'),
     freezingPoint_C: celsius.check(notAboveMelting),
-    water_kg_kg: fraction_kg_kg,
+    water_kg_kg,
     bound_kg_kg: fraction_kg_kg.default(0),
     ...uncertainty,
   })
@@ -48,7 +57,7 @@ const OsmolalityFreezing = z
           'give osmol per kg of water (a value in mOsm/kg divided by 1000)',
         ),
       ),
-    water_kg_kg: fraction_kg_kg,
+    water_kg_kg,
     bound_kg_kg: fraction_kg_kg.default(0),
     ...uncertainty,
   })
@@ -81,7 +90,7 @@ const SolutionFreezing = z
 const FoodFreezing = z
   .strictObject({
     kind: z.literal('food'),
-    water_kg_kg: fraction_kg_kg,
+    water_kg_kg,
     protein_kg_kg: fraction_kg_kg.default(0),
     fat_kg_kg: fraction_kg_kg.default(0),
     carbohydrate_kg_kg: fraction_kg_kg.default(0),
@@ -130,7 +139,15 @@ export type Stop = z.infer<typeof Stop>
 export const ProductPhysics = z.strictObject({
   freezing: Freezing,
   /** Apparent heat capacity of all that is not water; negative for salts. Default by form. */
-  liquidOther_cp_kJ_kgK: finite.optional(),
+  liquidOther_cp_kJ_kgK: finite
+    .check(
+      must(
+        (v) => v >= -20 && v <= 20,
+        'an apparent heat capacity lies between −20 and 20 kJ/(kg K)',
+        'give kJ per kg and kelvin; salts have about −2.7, sugars 1.4',
+      ),
+    )
+    .optional(),
   stop_C: celsius.optional(),
   stop: Stop.optional(),
 })

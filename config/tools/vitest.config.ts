@@ -6,6 +6,7 @@ export default defineConfig({
   root: new URL('../..', import.meta.url).pathname,
   test: {
     include: ['test/**/*.test.ts', ...(nightly ? ['test/**/*.nightly.ts'] : [])],
+    setupFiles: ['test/setup.ts'],
     // Processes, not threads: the fault tests signal and kill, and native SQLite lives in them.
     pool: 'forks',
     maxWorkers: 2,
