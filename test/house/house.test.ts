@@ -33,7 +33,7 @@ test('nothing stands on the top level but what the house has there', () => {
 
 test('what is made is not kept', () => {
   const ignored = read('.gitignore').split('\n')
-  for (const name of ['node_modules/', 'dist/', 'data/']) expect(ignored).toContain(name)
+  for (const name of ['node_modules/', 'dist/', '/data/']) expect(ignored).toContain(name)
 })
 
 test('no file names a path of the machine that it was written on', () => {
