@@ -144,13 +144,16 @@ const stepItem = (world: World, state: SimState, index: number, r: Random, turns
   const T = temperaturesOf(item, now)
   const G = item.inner_W_K
   const air_C = air.air_C + item.position_K
-  // The wall is light: it follows what it touches at once, so its own balance is solved exactly.
+  // The wall is light: what it touches is held for the step, and its own balance solved exactly. The
+  // outer shell meets the wall's mean over the step, so that no heat is made or lost between them.
   const drive = item.UA_W_K + G
   const goal_C = (item.UA_W_K * air_C + G * (T[0] ?? 0)) / drive
-  now.wall_C =
-    goal_C + (now.wall_C - goal_C) * Math.exp((-drive * step_s) / (1000 * item.wall_kJ_K))
+  const steps = (drive * step_s) / (1000 * item.wall_kJ_K)
+  const kept = Math.exp(-steps)
+  const wallMean_C = goal_C + ((now.wall_C - goal_C) * (1 - kept)) / steps
+  now.wall_C = goal_C + (now.wall_C - goal_C) * kept
   for (let k = 0; k < shells; k++) {
-    const outer = k === 0 ? now.wall_C : (T[k - 1] ?? 0)
+    const outer = k === 0 ? wallMean_C : (T[k - 1] ?? 0)
     const own = T[k] ?? 0
     const inner = k === shells - 1 ? own : (T[k + 1] ?? 0)
     const watts = G * (outer - own) + G * (inner - own)

@@ -82,6 +82,34 @@ describe('the simulated site', () => {
     expect(Math.abs(reached_C - end_C)).toBeLessThan(0.02)
   })
 
+  test('an item that gives no heat to the air keeps its own for a day, whatever turns and melts in it', () => {
+    const demo = worldFor('demo', 8)
+    const world = { ...demo, items: demo.items.map((item) => ({ ...item, UA_W_K: 0 })) }
+    const state = freshState(world, 8)
+    // Shells far from each other: some turned, some deep below their lines, a wall that is warm.
+    state.items.forEach((now, i) => {
+      now.h = now.h.map((h, k) => h - 4 * k - (i % 5) * 6)
+      now.wall_C += 12
+      if (i % 2 === 0) now.turned_s = 0
+    })
+    const heat_kJ = () =>
+      world.items.map((item, i) => {
+        const { h, wall_C } = state.items[i]!
+        return item.shell_kg * h.reduce((a, b) => a + b, 0) + item.wall_kJ_K * wall_C
+      })
+    const before = heat_kJ()
+    advance(world, state, 86_400, 8)
+    heat_kJ().forEach((after, i) => {
+      const item = world.items[i]!
+      const scale_kJ = 4 * item.shell_kg * 10 // what 2–3 K of its product hold
+      expect(Math.abs(after - before[i]!) / scale_kJ, item.id).toBeLessThan(1e-6)
+      expect(
+        Math.abs(meanTemperature_C(item, state.items[i]!) - state.items[i]!.wall_C),
+        item.id,
+      ).toBeLessThan(0.1) // they began 12 K and more apart
+    })
+  })
+
   test('an item left in still air of its own temperature stays as it is', () => {
     const world = worldFor('demo', 8)
     const calm = {
