@@ -1,5 +1,6 @@
 import { closeSync, openSync, writeFileSync, writeSync } from 'node:fs'
 import { rfc3339 } from '../config/schema/reading.js'
+import { Refusal } from '../config/schema/refusal.js'
 import { lineOf } from './messages.js'
 import { advance, freshState, meanIce_kg_kg, meanTemperature_C } from './model.js'
 import type { World } from './world.js'
@@ -13,9 +14,24 @@ export type Files = {
   readonly readings: string | null
 }
 
-const lines = (file: string | null) => {
+const opened = (field: string, file: string): number => {
+  try {
+    return openSync(file, 'w')
+  } catch (error) {
+    throw new Refusal(
+      'cannot-write',
+      field,
+      file,
+      error instanceof Error ? error.message : 'it cannot be written',
+      'name a file in a folder that exists and may be written to',
+      { cause: error },
+    )
+  }
+}
+
+const lines = (field: string, file: string | null) => {
   if (file === null) return { write: (_: unknown) => {}, close: () => {} }
-  const fd = openSync(file, 'w')
+  const fd = opened(field, file)
   let waiting: string[] = []
   const flush = () => {
     if (waiting.length > 0) writeSync(fd, `${waiting.join('\n')}\n`)
@@ -37,15 +53,20 @@ const lines = (file: string | null) => {
  * A scenario as files: the site, what its probes read in order of receipt, and what truly was.
  *
  * @returns how many readings and turns there were
+ * @throws  Refusal 'cannot-write' naming the file
  */
 export const writeFiles = (
   world: World,
   seed: number,
   files: Files,
 ): { readings: number; turns: number } => {
-  if (files.site !== null) writeFileSync(files.site, `${JSON.stringify(world.site, null, 1)}\n`)
-  const truth = lines(files.truth)
-  const readings = lines(files.readings)
+  if (files.site !== null) {
+    const fd = opened('--site', files.site)
+    writeFileSync(fd, `${JSON.stringify(world.site, null, 1)}\n`)
+    closeSync(fd)
+  }
+  const truth = lines('--truth', files.truth)
+  const readings = lines('--readings', files.readings)
   const state = freshState(world, seed)
   const end_s = world.scenario.hours * 3600
   const count = { readings: 0, turns: 0 }

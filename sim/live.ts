@@ -11,6 +11,8 @@ const mostBehind_h = 48
 const slice_s = 600
 /** Messages under way; past it the simulator waits for their acknowledgement. */
 const mostUnderWay = 500
+/** At a stop nothing is waited for once no acknowledgement has come for so long, wall ms. */
+const mostIdle_ms = 2000
 
 export type Demo = { stop(): Promise<void> }
 
@@ -69,11 +71,23 @@ export const playLive = (options: {
     playing = playing.then(play).catch(options.onFault)
   }, every_ms)
 
+  /** What the state counts as sent is acknowledged, or the broker has gone. */
+  const settled = async () => {
+    const pause_ms = 20
+    let left = underWay
+    for (let idle_ms = 0; underWay > 0 && client.connected && idle_ms < mostIdle_ms; ) {
+      await new Promise((resolve) => setTimeout(resolve, pause_ms))
+      idle_ms = underWay < left ? 0 : idle_ms + pause_ms
+      left = underWay
+    }
+  }
+
   return {
     async stop() {
       stopped = true
       clearInterval(timer)
       await playing
+      await settled()
       await client.endAsync(true)
     },
   }

@@ -15,7 +15,7 @@ const help = `npm run -s sim -- --scenario NAME [--seed N] [options]
   --truth FILE       write what truly happened, JSON lines
   --site FILE        write the site file
   --readings FILE    write what the probes read, JSON lines
-  --mqtt URL         publish to a broker instead of files: mqtt://host:port
+  --mqtt URL         publish to a broker: mqtt://host:port; files asked for are written first
   --speed N          simulated seconds per second with --mqtt (60); the scenario then begins in
                      the past and reaches the present at its end
   --help             this text
@@ -52,6 +52,17 @@ const options = {
   speed: { type: 'string' },
 } as const
 
+const brokerOf = (text: string): string => {
+  if (/^(mqtt|ws)s?:$/.test(URL.canParse(text) ? new URL(text).protocol : '')) return text
+  throw new Refusal(
+    'bad-url',
+    '--mqtt',
+    text,
+    'it is no address of a broker',
+    'write --mqtt mqtt://127.0.0.1:1883',
+  )
+}
+
 const argumentsOf = (argv: string[]) => {
   try {
     return parseArgs({ args: argv, options }).values
@@ -79,10 +90,23 @@ const play = (argv: string[]): void => {
   if (given.scenario === undefined)
     throw new Refusal('missing', '--scenario', undefined, 'it is missing', 'give one of --list')
   const scenario = scenarioOf(given.scenario)
-  const seed = Math.trunc(number('--seed', given.seed, scenario.seed, 0, 2 ** 31 - 1))
+  const seed = number('--seed', given.seed, scenario.seed, 0, 2 ** 31 - 1)
+  if (!Number.isInteger(seed))
+    throw new Refusal(
+      'out-of-range',
+      '--seed',
+      given.seed,
+      'it is no whole number',
+      'write --seed 1',
+    )
   const speed = number('--speed', given.speed, 60, 0.1, 100_000)
   const { solutes } = readLibrary()
   const written = siteOf(scenario)
+  const files = {
+    truth: given.truth ?? null,
+    site: given.site ?? null,
+    readings: given.readings ?? null,
+  }
   if (given.mqtt === undefined) {
     if (given.truth === undefined && given.site === undefined && given.readings === undefined)
       throw new Refusal(
@@ -93,27 +117,26 @@ const play = (argv: string[]): void => {
         'give --readings, --site or --truth, or --mqtt',
       )
     const world = worldOf(scenario, written, solutes, seed)
-    const count = writeFiles(world, seed, {
-      truth: given.truth ?? null,
-      site: given.site ?? null,
-      readings: given.readings ?? null,
-    })
+    const count = writeFiles(world, seed, files)
     return void process.stderr.write(`${count.readings} readings, ${count.turns} turns\n`)
   }
+  const url = brokerOf(given.mqtt)
   // Faster than the wall's clock, it begins in the past and reaches the present at its end: a site
   // that runs on the wall's clock would otherwise hear of the future and believe none of it.
   const began_ms = Date.now()
-  const start_ms = began_ms - scenario.hours * 3_600_000 * Math.max(0, 1 - 1 / speed)
+  const start_ms = began_ms - Math.round(scenario.hours * 3_600_000 * Math.max(0, 1 - 1 / speed))
   const world = {
     ...worldOf(scenario, shifted(written, start_ms - Date.parse(scenario.start)), solutes, seed),
     start_ms,
   }
+  // What will be is settled by scenario, seed and start, so it is written before it is played.
+  if (Object.values(files).some((file) => file !== null)) writeFiles(world, seed, files)
   const end_ms = start_ms + scenario.hours * 3_600_000
   const now_ms = () => Math.min(end_ms, start_ms + (Date.now() - began_ms) * speed)
   const live = playLive({
     world,
     seed,
-    url: given.mqtt,
+    url,
     saved: null,
     now_ms,
     keep: (state) => {

@@ -1,4 +1,4 @@
-import { execFileSync, spawnSync } from 'node:child_process'
+import { execFileSync, spawn, spawnSync } from 'node:child_process'
 import { mkdtempSync, readFileSync, rmSync } from 'node:fs'
 import { createServer } from 'node:net'
 import { tmpdir } from 'node:os'
@@ -63,6 +63,12 @@ test.each([
   { args: [], says: /--scenario .*missing/ },
   { args: ['--scenario', 'demo', '--seed', 'x', '--site', '/dev/null'], says: /--seed is x/ },
   { args: ['--sead', '3'], says: /--help/ },
+  { args: ['--scenario', 'demo', '--seed', '1.5', '--site', '/dev/null'], says: /no whole number/ },
+  { args: ['--scenario', 'demo', '--mqtt', 'nowhere'], says: /--mqtt is nowhere.*mqtt:\/\// },
+  {
+    args: ['--scenario', 'demo', '--truth', join('no-such-folder', 'truth.jsonl')],
+    says: /--truth is no-such-folder.*folder that exists/,
+  },
 ])('$args ends with 2 and says what to change', ({ args, says }) => {
   const { status, stderr } = spawnSync(process.execPath, [play, ...args], { encoding: 'utf8' })
   expect(status).toBe(2)
@@ -102,4 +108,41 @@ test('MQTT: every reading up to the clock reaches a real broker, and none beyond
   expect(heard).toHaveLength(expected)
   await new Promise<void>((resolve) => broker.close(() => resolve()))
   server.close()
+})
+
+test('MQTT to the end of a scenario: the last readings too reach a slow broker, and the truth is written', async () => {
+  const folder = mkdtempSync(join(tmpdir(), 'hoarline-sim-'))
+  onTestFinished(() => rmSync(folder, { recursive: true, force: true }))
+  const truth = join(folder, 'truth.jsonl')
+  const scenario = scenarioOf('buffer-lags')
+  const world = worldOf(scenario, siteOf(scenario), readLibrary().solutes, 9)
+  const expected = advance(world, freshState(world, 9), scenario.hours * 3600, 9).sent.length
+
+  let heard = 0
+  const broker = await Aedes.createBroker({
+    // Slow enough that much is still under way when the scenario ends.
+    authorizePublish: (_client, _packet, done) => void setTimeout(() => done(null), 20),
+  })
+  broker.on('publish', (_packet, client) => {
+    if (client !== null) heard += 1
+  })
+  const server = createServer(broker.handle)
+  await new Promise<void>((resolve) => server.listen(0, '127.0.0.1', resolve))
+  onTestFinished(async () => {
+    await new Promise<void>((resolve) => broker.close(() => resolve()))
+    server.close()
+  })
+  const address = server.address()
+  const port = typeof address === 'object' && address !== null ? address.port : 0
+  const args = ['--scenario', 'buffer-lags', '--seed', '9', '--speed', '100000']
+  const child = spawn(process.execPath, [
+    ...[play, ...args, '--truth', truth],
+    ...['--mqtt', `mqtt://127.0.0.1:${port}`],
+  ])
+  onTestFinished(() => void child.kill('SIGKILL'))
+  const code = await new Promise((resolve) => child.once('exit', resolve))
+  expect(code).toBe(0)
+  expect(heard).toBe(expected)
+  const last = readFileSync(truth, 'utf8').trim().split('\n').at(-1) ?? ''
+  expect(JSON.parse(last)).toMatchObject({ item: world.items.at(-1)?.id, turned: false })
 })
