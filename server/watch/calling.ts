@@ -36,6 +36,9 @@ const waitRange_s: readonly [number, number] = [10, 300]
  * @param apart_s    since the reading before: a probe that is still on its way shows nothing at once
  * @param warmAir    the air that serves it is above its line
  * @param settled_z  how far the reading is from the plateau of the heaviest story with ice
+ * @param meantIce   it is meant to be frozen, or was once. Other stock that only stays level in cold
+ *                   air tells ice and liquid by nothing but small misfits of the model, which add up
+ *                   over hours: no ground to say that it was placed frozen. In warm air a plateau is.
  */
 export const calledBy = (
   track: ItemTrack,
@@ -45,6 +48,7 @@ export const calledBy = (
   apart_s: number,
   warmAir: boolean,
   settled_z: number,
+  meantIce: boolean,
 ): Partial<ItemTrack> => {
   const p = turnedProbability(track)
   // While its measured air is warmer than its line a rise proves little: it may just be warmed.
@@ -61,6 +65,7 @@ export const calledBy = (
     const iced = track.bank.filter((b) => b.kind !== 'liquid')
     const placed = iced.reduce((s, b) => s + (b.placedAsIce ? Math.exp(b.w) : 0), 0)
     const placedAsIce = placed > 0.5
+    if (placedAsIce && !meantIce && !warmAir) return { strong, strong_ms }
     return { strong, strong_ms, called: { at_ms: t_ms, reckoned: placedAsIce, placedAsIce } }
   }
   return { strong, strong_ms }

@@ -7,7 +7,7 @@ import { temperature_C } from './matter.js'
 import { type Group, type Plan, valueAt } from './plan.js'
 import { normalised, type Sight, type Stretch, thinned } from './rivals.js'
 import { slotPrior } from './slots.js'
-import { bankOf } from './start.js'
+import { bankOf, meantFrozen } from './start.js'
 import type { Branch, Core, Fork, ItemTrack, SlotTrack } from './state.js'
 import { jumpOf } from './surroundings.js'
 import { expectation, tell } from './tell.js'
@@ -174,6 +174,7 @@ export function hearOwn(
   )
   const prior = slotPrior(plan, item.slots[k]!, matter.gradient)
   const warmAir = track.based && track.base_C > matter.freezing_C
+  const meantIce = item.item.previouslyFrozen || meantFrozen(item, t_ms)
   const stretch: Stretch = {
     slot: k,
     bias_K: 1.2 * probe.given.accuracy_K + 2 * matter.uFreezing_K + 0.02,
@@ -222,6 +223,7 @@ export function hearOwn(
           apart_s,
           warmAir,
           fromPlateau_z(track, matter, sight, prior, kind === 'wall'),
+          meantIce,
         ),
       }
     }
@@ -282,6 +284,7 @@ export function hearOwn(
       apart_s,
       warmAir,
       fromPlateau_z(track, matter, sight, prior, kind === 'wall'),
+      meantIce,
     ),
   }
   // The doubt has been weighed in the call; it must not come back on another occasion.
