@@ -22,6 +22,9 @@ const hold = (k: Kinetics, depth_K: number, dt_s: number): number[] => {
   return e
 }
 
+/** ln of the rate that is believed most. */
+const middleOf = (k: Kinetics): number => k.lnRate[k.weight.indexOf(Math.max(...k.weight))]!
+
 const one = (b: number): Kinetics => ({ nu: 0.48, b: [b], rate: [1], lnRate: [0], weight: [1] })
 
 describe('exposure', () => {
@@ -109,6 +112,46 @@ describe('chance', () => {
     },
   )
 
+  test.each([
+    { of: 'clean-solution', depth: 6, past_h: 24, survived: 1 },
+    { of: 'food-liquid', depth: 4, past_h: 720, survived: 1 },
+    { of: 'unknown', depth: 12, past_h: 720, survived: 1 },
+    { of: 'animal-tissue', depth: 12, past_h: 24, survived: 3 },
+    { of: 'food-liquid', depth: 6, past_h: 24, survived: 20 },
+  ] as const)(
+    'after $past_h h at $depth K that $survived survived, quantiles are those of a fine grid ($of)',
+    ({ of, depth, past_h, survived }) => {
+      const V_m3 = 1e-5
+      const k = kineticsOf(priors, of, V_m3, false)
+      const e = hold(k, depth, 8 * 3600)
+      const past = hold(k, depth, past_h * 3600)
+      const c = chanceOf(k, past, survived, [{ exposure: e, weight: 1 }], 1)
+      const { log10Kappa, b } = priors.classes[of]
+      const draws: { lnΛ: number; w: number }[] = []
+      for (let j = 0; j < 100; j++) {
+        const power = (depth / 10) ** (b[0] + ((j + 0.5) * (b[1] - b[0])) / 100)
+        for (let z = -9; z <= 7; z += 0.02) {
+          const κ = 10 ** (log10Kappa.mean + log10Kappa.sd * z) * V_m3
+          const κE = κ * power * past_h * 3600
+          const Λ = 0.48 * Math.log1p((κ * power * 8 * 3600) / (0.48 + κE))
+          const w = Math.exp((-z * z) / 2 - 0.48 * survived * Math.log1p(κE / 0.48))
+          draws.push({ lnΛ: Math.log(Λ), w })
+        }
+      }
+      draws.sort((x, y) => x.lnΛ - y.lnΛ)
+      const all = draws.reduce((sum, { w }) => sum + w, 0)
+      for (const [i, p] of [0.1, 0.5, 0.9].entries()) {
+        let sum = 0
+        const exact = draws.find(({ w }) => {
+          sum += w
+          return sum >= p * all
+        })!.lnΛ
+        const decades = Math.abs(Math.log(-Math.log1p(-c.one[i]!)) - exact) / Math.LN10
+        expect(decades).toBeLessThan(0.1)
+      }
+    },
+  )
+
   test('law: longer, deeper, more containers, never less', () => {
     const depth = fc.double({ min: 0.1, max: 20, noNaN: true })
     const more = fc.double({ min: 1, max: 3, noNaN: true })
@@ -167,7 +210,7 @@ describe('priors', () => {
   )
 
   test('up to 100 mL the rate goes with the volume, beyond with less and less certainly', () => {
-    const median = (V: number) => kineticsOf(priors, 'unknown', V, false).lnRate[13]!
+    const median = (V: number) => middleOf(kineticsOf(priors, 'unknown', V, false))
     const spread = (V: number) => {
       const { lnRate } = kineticsOf(priors, 'unknown', V, false)
       return lnRate.at(-1)! - lnRate[0]!
